@@ -1,0 +1,88 @@
+/**
+ * What a measurement says. Levels are in the units their names carry; a value that does not exist is `null`
+ * (too short for the window, below the gate), never -Infinity, NaN or 0.
+ */
+
+/** Facts of the file as read from its header or told by the decoder. */
+export interface AudioFormat {
+  /** 'WAV', 'RF64', 'BW64', 'AIFF', 'AIFF-C', or the decoder's container name in capitals ('FLAC', 'MP3', 'MOV', 'MXF', 'OGG', 'MP4'). */
+  container: string;
+  /** 'PCM', 'PCM float', 'FLAC', 'MP3', 'AAC', 'ALAC', 'Vorbis', 'Opus', … */
+  codec: string;
+  sampleRateHz: number;
+  /** Declared bits per sample; `null` where the codec has none (lossy codecs). */
+  bitDepth: number | null;
+  /** Audio channels of the file. */
+  channels: number;
+  /** 'mono', 'stereo', '3.0', '5.0', '5.1', '7.1', '5.1.4', '7.1.4', or 'N channels' where the file does not say. */
+  layout: string;
+  durationSeconds: number;
+}
+
+/** Something about the file that a person should know; codes are stable and may be rules of a spec. */
+export interface Finding {
+  code: FindingCode;
+  message: string;
+  atSeconds?: number;
+  lengthSeconds?: number;
+  /** Audio channel, from 0, where the finding belongs to one. */
+  audioChannel?: number;
+}
+
+export const findingCodes = [
+  'truncated', // less audio than the header promises
+  'size-lies', // a header size is 0, 0xFFFFFFFF without ds64, or larger/smaller than the file
+  'not-a-number', // NaN or infinite float samples, measured as silence
+  'unreadable-part', // the decoder skipped or concealed damaged data
+  'layout-assumed', // the file does not say its layout; the usual order was assumed
+] as const;
+export type FindingCode = (typeof findingCodes)[number];
+
+export interface Loudness {
+  integratedLufs: number | null;
+  relativeThresholdLufs: number | null;
+  rangeLu: number | null;
+  rangeLowLufs: number | null;
+  rangeHighLufs: number | null;
+  momentaryMaxLufs: number | null;
+  shortTermMaxLufs: number | null;
+  /** Present for mono only: one channel judged as two (weight 2.0), gated anew. */
+  dualMonoIntegratedLufs?: number | null;
+}
+
+export interface Figures {
+  loudness: Loudness;
+  truePeak: { maxDbtp: number | null; perChannelDbtp: (number | null)[] };
+  samplePeak: { maxDbfs: number | null; perChannelDbfs: (number | null)[] };
+  /** Where the maxima stand, seconds from the start: the window's centre is not used, its end is. */
+  times: {
+    momentaryMaxAtSeconds: number | null;
+    shortTermMaxAtSeconds: number | null;
+    truePeakMaxAtSeconds: number | null;
+  };
+  /** Seconds of programme that were measured. */
+  measuredSeconds: number;
+}
+
+/** One measurement of one presentation. */
+export interface Measurement {
+  format: AudioFormat;
+  figures: Figures;
+  findings: Finding[];
+}
+
+/**
+ * The series kept beside the figures. Per 10 ms the weighted energy (mean square, linear, all audio channels summed
+ * with their weights) and the largest true peak (linear, over all audio channels); per 100 ms the K-weighted mean
+ * square of each audio channel, interleaved by audio channel.
+ */
+export interface MeasurementSeries {
+  stepSeconds: 0.01;
+  energy: Float32Array | Float64Array;
+  truePeak: Float32Array;
+  channelCount: number;
+  channelEnergy: Float32Array;
+}
+
+/** Name of the engine that made a measurement; changes whenever any figure could. */
+export const engineVersion = '1.0.0';
