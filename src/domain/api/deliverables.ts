@@ -1,0 +1,192 @@
+import { z } from 'zod';
+import { contentKindSchema, deliverableStateSchema, overallOutcomeSchema, submissionStateSchema } from '../vocabulary.ts';
+import { excursionSchema, verdictBodySchema } from '../verdict.ts';
+import { specBodySchema } from '../spec.ts';
+import { idSchema, itemResultSchema, listOf, momentSchema, pageQuerySchema, personSchema } from './common.ts';
+
+export const formatSchema = z.object({
+  container: z.string(),
+  codec: z.string(),
+  sampleRateHz: z.number(),
+  bitDepth: z.number().nullable(),
+  channels: z.number().int(),
+  layout: z.string(),
+  durationSeconds: z.number(),
+});
+const level = z.number().nullable();
+export const figuresSchema = z.object({
+  loudness: z.object({
+    integratedLufs: level,
+    relativeThresholdLufs: level,
+    rangeLu: level,
+    rangeLowLufs: level,
+    rangeHighLufs: level,
+    momentaryMaxLufs: level,
+    shortTermMaxLufs: level,
+    dualMonoIntegratedLufs: level.optional(),
+  }),
+  truePeak: z.object({ maxDbtp: level, perChannelDbtp: z.array(level) }),
+  samplePeak: z.object({ maxDbfs: level, perChannelDbfs: z.array(level) }),
+  times: z.object({
+    momentaryMaxAtSeconds: level,
+    shortTermMaxAtSeconds: level,
+    truePeakMaxAtSeconds: level,
+  }),
+  measuredSeconds: z.number(),
+});
+export const findingSchema = z.object({
+  code: z.string(),
+  message: z.string(),
+  atSeconds: z.number().optional(),
+  lengthSeconds: z.number().optional(),
+  audioChannel: z.number().int().optional(),
+});
+export const measurementSchema = z.object({
+  id: idSchema,
+  engineVersion: z.string(),
+  format: formatSchema,
+  figures: figuresSchema,
+  findings: z.array(findingSchema),
+  measuringSeconds: z.number(),
+  createdAt: momentSchema,
+});
+
+/** A deliverable's standing with one channel that it is for. */
+export const channelVerdictSchema = z.object({
+  channelId: idSchema,
+  channelName: z.string(),
+  distributorName: z.string(),
+  /** `null` while nothing is measured, or where no spec is in force for this kind of content. */
+  specName: z.string().nullable(),
+  specVersionId: idSchema.nullable(),
+  specVersionNumber: z.number().int().nullable(),
+  verdictId: idSchema.nullable(),
+  verdict: verdictBodySchema.nullable(),
+  submission: z.object({ id: idSchema, state: submissionStateSchema, submittedAt: momentSchema }).nullable(),
+});
+export type ChannelVerdict = z.infer<typeof channelVerdictSchema>;
+
+export const deliverableRowSchema = z.object({
+  id: idSchema,
+  fileName: z.string(),
+  byteSize: z.number(),
+  state: deliverableStateSchema,
+  reason: z.string().nullable(),
+  programmeTitle: z.string().nullable(),
+  episodeLabel: z.string().nullable(),
+  versionLabel: z.string(),
+  contentKind: contentKindSchema,
+  format: formatSchema.nullable(),
+  figures: figuresSchema.nullable(),
+  /** Worst first. */
+  channels: z.array(channelVerdictSchema),
+  /** Worst outcome over all channels; `null` while not judged. */
+  outcome: overallOutcomeSchema.nullable(),
+  /** Where measuring stands; `null` unless it goes on. */
+  progress: z.object({ secondsDone: z.number(), secondsTotal: z.number().nullable() }).nullable(),
+  createdAt: momentSchema,
+});
+export type DeliverableRow = z.infer<typeof deliverableRowSchema>;
+export const deliverableListSchema = listOf(deliverableRowSchema);
+
+export const deliverableSorts = ['created', 'programme', 'integrated', 'truePeak', 'range', 'duration'] as const;
+export const deliverableQuerySchema = pageQuerySchema.extend({
+  q: z.string().max(200).optional(),
+  programme: z.string().max(200).optional(),
+  channel: idSchema.optional(),
+  /** Comma-separated outcomes, or 'none'. */
+  verdict: z.string().max(60).optional(),
+  state: z.string().max(80).optional(),
+  kind: contentKindSchema.optional(),
+  sort: z.enum(deliverableSorts).default('created'),
+  order: z.enum(['asc', 'desc']).default('desc'),
+});
+
+/** One deliverable's report: the row, its whole verdicts with the specs' bodies, and the measurement. */
+export const deliverableReportSchema = deliverableRowSchema.extend({
+  sha256: z.string().nullable(),
+  uploadedBy: personSchema,
+  measuredAt: momentSchema.nullable(),
+  measurement: measurementSchema.nullable(),
+  specs: z.array(z.object({ specVersionId: idSchema, body: specBodySchema })),
+  replaces: z.object({ id: idSchema, fileName: z.string() }).nullable(),
+});
+export type DeliverableReport = z.infer<typeof deliverableReportSchema>;
+
+/** Details that many rows may be given at once; a title or label that does not exist yet is made. */
+export const deliverableDetailsSchema = z.object({
+  programmeTitle: z.string().trim().max(200).nullable().optional(),
+  episodeLabel: z.string().trim().max(80).nullable().optional(),
+  versionLabel: z.string().trim().max(80).optional(),
+  contentKind: contentKindSchema.optional(),
+  channelIds: z.array(idSchema).max(50).optional(),
+});
+export type DeliverableDetails = z.infer<typeof deliverableDetailsSchema>;
+export const patchDeliverablesSchema = z.object({
+  items: z.array(deliverableDetailsSchema.extend({ id: idSchema })).min(1).max(200),
+});
+export const patchDeliverablesResultSchema = z.object({ items: z.array(itemResultSchema(deliverableRowSchema)) });
+
+/**
+ * Loudness over time, one value per 100 ms (value i covers up to (i + 1) x 0.1 s); `null` where a window is not full or
+ * there is no value. True peak in dBTP is the largest of the 100 ms. Excursions belong to the asked spec version.
+ */
+export const passageSchema = z.object({
+  stepSeconds: z.number(),
+  shortTermLufs: z.array(level),
+  momentaryLufs: z.array(level),
+  truePeakDbtp: z.array(level),
+  excursions: z.array(excursionSchema),
+});
+export type Passage = z.infer<typeof passageSchema>;
+
+export const programmesSchema = z.object({
+  items: z.array(z.object({ id: idSchema, title: z.string(), episodes: z.array(z.string()) })),
+});
+
+// Uploads -----------------------------------------------------------------------------------------------------
+
+export const maximumFileBytes = 64 * 1024 ** 3;
+export const createUploadsSchema = z.object({
+  files: z
+    .array(
+      z.object({
+        fileName: z.string().trim().min(1).max(255),
+        byteSize: z.number().int().positive(),
+        lastModifiedMs: z.number().int().nonnegative(),
+        details: deliverableDetailsSchema.default({}),
+      }),
+    )
+    .min(1)
+    .max(100),
+});
+export const uploadSchema = z.object({
+  deliverableId: idSchema,
+  fileName: z.string(),
+  byteSize: z.number(),
+  lastModifiedMs: z.number(),
+  partBytes: z.number().int(),
+  partCount: z.number().int(),
+  /** Numbers of the parts that storage already holds. */
+  partsDone: z.array(z.number().int()),
+  /** True when the same file's broken-off upload was found and goes on. */
+  resumed: z.boolean(),
+  createdAt: momentSchema,
+});
+export type Upload = z.infer<typeof uploadSchema>;
+/** `id` of each item is the file's place in the request, as a string. */
+export const createUploadsResultSchema = z.object({ items: z.array(itemResultSchema(uploadSchema)) });
+export const uploadListSchema = z.object({ items: z.array(uploadSchema) });
+export const signPartsSchema = z.object({ numbers: z.array(z.number().int().min(1).max(10_000)).min(1).max(100) });
+export const signPartsResultSchema = z.object({ items: z.array(z.object({ number: z.number().int(), url: z.string() })) });
+export const recordPartSchema = z.object({
+  number: z.number().int().min(1).max(10_000),
+  etag: z.string().min(1).max(200),
+  byteSize: z.number().int().positive(),
+});
+export const completeUploadSchema = z.object({ sha256: z.string().regex(/^[0-9a-f]{64}$/) });
+export const completeUploadResultSchema = z.object({
+  deliverable: deliverableRowSchema,
+  /** Another deliverable of the same organisation with the same hash, told once. */
+  alreadyDelivered: z.object({ id: idSchema, fileName: z.string(), createdAt: momentSchema }).nullable(),
+});
