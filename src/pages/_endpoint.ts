@@ -4,7 +4,7 @@ import type { APIContext, APIRoute } from 'astro';
 import { z } from 'zod';
 import { log } from '@/server/log.ts';
 import type { MemberScope } from '@/server/scope.ts';
-import { refusalStatus, type Answer, type Refusal } from '@/server/services/refusals.ts';
+import { refusalStatus, type Answer, type Refusal } from '@/server/refusals.ts';
 
 export const json = (body: unknown, status = 200, headers: Record<string, string> = {}) =>
   Response.json(body, { status, headers: { 'cache-control': 'no-store', ...headers } });
@@ -63,7 +63,7 @@ export function endpoint(handle: (context: APIContext, scope: MemberScope) => Pr
       if (error instanceof BadInput) return refusalResponse(error.refusal);
       const reference = randomUUID();
       log.error({ err: error, reference, path: context.url.pathname }, 'endpoint failed');
-      const message = `Something went wrong on our side; nothing was changed. Quote ${reference} when you ask us.`;
+      const message = `Something went wrong on our side. Try again; if it stays, quote ${reference}.`;
       return json({ error: { code: 'surprise', message, reference } }, 500);
     }
   };

@@ -13,7 +13,7 @@ export const pageQuerySchema = z.object({
   limit: z.coerce.number().int().min(1).max(200).catch(50).default(50),
 });
 
-/** A refusal: a code from one table (server/services/refusals.ts), one plain sentence, and what it was about. */
+/** A refusal: a code from one table (server/refusals.ts), one plain sentence, and what it was about. */
 export const problemSchema = z.object({
   error: z.object({
     code: z.string(),

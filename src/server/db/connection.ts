@@ -2,7 +2,7 @@
 import knex, { type Knex } from 'knex';
 import pg from 'pg';
 import { config } from '../config.ts';
-import { RefusedError, type Answer } from '../services/refusals.ts';
+import { RefusedError, type Answer } from '../refusals.ts';
 
 /** A pool or a transaction: repositories do not care. */
 export type Db = Knex;

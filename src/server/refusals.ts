@@ -1,6 +1,6 @@
 /** Expected refusals are values: a code from this one table, mapped to a status once, with a sentence for the person. */
-import { mayDo, type Scope } from '../scope.ts';
-import type { Permission } from '../../domain/permissions.ts';
+import { mayDo, type Scope } from './scope.ts';
+import type { Permission } from '../domain/permissions.ts';
 
 export const refusalStatus = {
   bad_input: 422,
