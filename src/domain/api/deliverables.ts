@@ -151,8 +151,9 @@ export const createUploadsSchema = z.object({
   files: z
     .array(
       z.object({
-        fileName: z.string().trim().min(1).max(255),
-        byteSize: z.number().int().positive(),
+        // Empty files and names that cannot stand are answered per file, with a sentence (domain/upload-plan.ts).
+        fileName: z.string().trim().max(4000),
+        byteSize: z.number().int().nonnegative(),
         lastModifiedMs: z.number().int().nonnegative(),
         details: deliverableDetailsSchema.default({}),
       }),
