@@ -1,0 +1,63 @@
+/** What the parts of measuring say to each other: the service, the queue's worker, and the child process that measures. */
+import { z } from 'zod';
+import { figuresSchema, findingSchema, formatSchema } from '../../domain/api/deliverables.ts';
+import { findingCodes } from '../../engine/figures.ts';
+import { progressSchema, type Progress } from './progress.ts';
+
+/** What whoever measures is told, and nothing more: it needs no database. */
+export const measuringTaskSchema = z.object({
+  deliverableId: z.uuid(),
+  organisationId: z.uuid(),
+  storageKey: z.string(),
+  fileName: z.string(),
+  byteSize: z.number(),
+  sha256Declared: z.string().nullable(),
+});
+export type MeasuringTask = z.infer<typeof measuringTaskSchema>;
+
+/** How it ends. 'file': nothing but another file helps. 'surroundings': try again. 'surprise': counts as a death. */
+export const measuringOutcomeSchema = z.discriminatedUnion('kind', [
+  z.object({
+    kind: z.literal('measured'),
+    format: formatSchema,
+    figures: figuresSchema,
+    findings: z.array(findingSchema.extend({ code: z.enum(findingCodes) })),
+    engineVersion: z.string(),
+    parametersHash: z.string(),
+    sha256: z.string().regex(/^[0-9a-f]{64}$/),
+    seriesKey: z.string(),
+    measuringSeconds: z.number(),
+  }),
+  z.object({ kind: z.literal('file'), code: z.string(), message: z.string(), sha256: z.string().nullable() }),
+  z.object({ kind: z.literal('surroundings'), message: z.string() }),
+  z.object({ kind: z.literal('surprise'), message: z.string() }),
+]);
+export type MeasuringOutcome = z.infer<typeof measuringOutcomeSchema>;
+
+/** Has a file measured off this event loop. Rejects when whoever measured died; `signal` ends it early as 'surroundings'. */
+export type MeasureElsewhere = (
+  task: MeasuringTask,
+  options: { onProgress: (progress: Progress) => void; signal: AbortSignal },
+) => Promise<MeasuringOutcome>;
+
+/** How a run of a deliverable ended. */
+export type MeasuringEnd =
+  | { kind: 'measured' | 'nothing-to-do' | 'handed-back' }
+  | { kind: 'unreadable'; reason: string };
+
+/** Trouble of the surroundings, or a death: the queue tries again, with growing pauses. */
+export class TryAgain extends Error {
+  override name = 'TryAgain';
+}
+
+/** From the worker to its child. */
+export const toChildSchema = z.object({ kind: z.literal('measure'), task: measuringTaskSchema });
+export type ToChild = z.infer<typeof toChildSchema>;
+
+/** From the child to its worker; 'alive' while bytes are read and there is no progress to tell. */
+export const fromChildSchema = z.discriminatedUnion('kind', [
+  z.object({ kind: z.literal('progress'), progress: progressSchema }),
+  z.object({ kind: z.literal('alive') }),
+  z.object({ kind: z.literal('outcome'), outcome: measuringOutcomeSchema }),
+]);
+export type FromChild = z.infer<typeof fromChildSchema>;

@@ -1,0 +1,110 @@
+/** Measures one stored object: bytes in ranges, hash taken on the way, series put back. Knows no database. */
+import { createHash } from 'node:crypto';
+import { engineVersion } from '../../engine/figures.ts';
+import { encodeSeries } from '../../engine/series.ts';
+import { measureSource } from '../measuring/measure-source.ts';
+import type { MeasuringOutcome, MeasuringTask } from '../queue/measuring-contract.ts';
+import type { Progress } from '../queue/progress.ts';
+import { HashingSource } from '../storage/hashing-source.ts';
+import { objectSource, type ByteSource } from '../storage/object-source.ts';
+import { headObject, ObjectMissing, putObject, seriesKey, StorageTrouble } from '../storage/storage.ts';
+
+/** Named in the measurement's identity: another window, order, stream or decoder is another measurement. */
+const wholeFile = { window: null, audioChannels: 'all, in file order', stream: 0, decoder: 'by first bytes' };
+const parametersHash = createHash('sha256').update(JSON.stringify(wholeFile)).digest('hex');
+
+const hashMismatch = {
+  code: 'hash-mismatch',
+  message:
+    'The file that lies in storage is not the one that was sent: its SHA-256 differs. It was not measured. Upload it again.',
+};
+const missing = { code: 'missing', message: 'Storage does not hold this file any more. Upload it again.' };
+
+/** Remembers trouble of storage, which a decoder between may wrap or take for the file's own. */
+class WatchedSource implements ByteSource {
+  readonly size: number;
+  trouble: StorageTrouble | ObjectMissing | null = null;
+
+  constructor(
+    private readonly source: ByteSource,
+    private readonly onRead: () => void,
+  ) {
+    this.size = source.size;
+  }
+
+  async read(offset: number, length: number): Promise<Uint8Array> {
+    try {
+      const bytes = await this.source.read(offset, length);
+      this.onRead();
+      return bytes;
+    } catch (error) {
+      if (error instanceof StorageTrouble || error instanceof ObjectMissing) this.trouble = error;
+      throw error;
+    }
+  }
+}
+
+/**
+ * Ends in an outcome and never throws: 'file' with a code and a sentence, 'surroundings' for storage, scratch space and
+ * an abort, 'surprise' for what nobody foresaw. `onRead` is a sign of life.
+ */
+export async function measureObject(
+  task: MeasuringTask,
+  options: { onProgress: (progress: Progress) => void; onRead: () => void; signal: AbortSignal },
+): Promise<MeasuringOutcome> {
+  const began = performance.now();
+  let watched: WatchedSource | null = null;
+  try {
+    const head = await headObject(task.storageKey);
+    if (!head) return { kind: 'file', ...missing, sha256: null };
+    watched = new WatchedSource(objectSource(task.storageKey, head.byteSize, options.signal), options.onRead);
+    const source = new HashingSource(watched);
+    const read = await readAll(task, source, options);
+    const sha256 = await source.sha256();
+    if (task.sha256Declared !== null && sha256 !== task.sha256Declared) return { kind: 'file', ...hashMismatch, sha256 };
+    if (!read.ok) return { kind: 'file', code: read.code, message: read.message, sha256 };
+    const key = seriesKey(task.organisationId, task.deliverableId, engineVersion, parametersHash);
+    await putObject(key, encodeSeries(read.series));
+    return {
+      kind: 'measured',
+      ...read.measurement,
+      engineVersion,
+      parametersHash,
+      sha256,
+      seriesKey: key,
+      measuringSeconds: (performance.now() - began) / 1000,
+    };
+  } catch (error) {
+    return troubleOf(watched?.trouble ?? error, options.signal);
+  }
+}
+
+type Read = Awaited<ReturnType<typeof measureSource>>;
+
+/** The engine's answer; a file that it cannot read is an answer too, so that the hash is looked at all the same. */
+async function readAll(
+  task: MeasuringTask,
+  source: ByteSource,
+  { onProgress, signal }: { onProgress: (progress: Progress) => void; signal: AbortSignal },
+): Promise<({ ok: true } & Read) | { ok: false; code: string; message: string }> {
+  try {
+    const read = await measureSource(source, task.fileName, {
+      onProgress: (secondsDone: number, secondsTotal: number | null) => onProgress({ secondsDone, secondsTotal }),
+      signal,
+    });
+    return { ok: true, ...read };
+  } catch (error) {
+    if (error instanceof Error && error.name === 'UnreadableError' && 'code' in error && !signal.aborted)
+      return { ok: false, code: String(error.code), message: error.message };
+    throw error;
+  }
+}
+
+function troubleOf(error: unknown, signal: AbortSignal): MeasuringOutcome {
+  const message = error instanceof Error ? (error.stack ?? error.message) : String(error);
+  if (signal.aborted) return { kind: 'surroundings', message: 'stopped before the end' };
+  if (error instanceof ObjectMissing) return { kind: 'file', ...missing, sha256: null };
+  // 'syscall' marks the system's own errors: scratch space full, ffmpeg not there.
+  if (error instanceof StorageTrouble || (error instanceof Error && 'syscall' in error)) return { kind: 'surroundings', message };
+  return { kind: 'surprise', message };
+}

@@ -1,0 +1,35 @@
+// The process that measures, one file at a time, told by workers/measuring.ts; it ends when that ends.
+import { measureObject } from '../src/server/services/measure-object.ts';
+import { toChildSchema, type FromChild } from '../src/server/queue/measuring-contract.ts';
+
+const progressEveryMilliseconds = 250;
+const aliveEveryMilliseconds = 5_000;
+
+const tell = (message: FromChild) => process.send?.(message);
+
+/** Runs `tellIt` at most once per interval. */
+function throttled<T>(milliseconds: number, tellIt: (value: T) => void): (value: T) => void {
+  let last = -Infinity;
+  return (value) => {
+    const now = performance.now();
+    if (now - last < milliseconds) return;
+    last = now;
+    tellIt(value);
+  };
+}
+
+// Without its worker nobody waits for the figures, and somebody else measures the file anew.
+process.on('disconnect', () => process.exit(1));
+// Ctrl-C reaches the whole group; the worker decides how its children end.
+process.on('SIGINT', () => {});
+process.on('SIGTERM', () => {});
+
+process.on('message', (raw) => {
+  const { task } = toChildSchema.parse(raw);
+  void measureObject(task, {
+    onProgress: throttled(progressEveryMilliseconds, (progress) => tell({ kind: 'progress', progress })),
+    onRead: throttled(aliveEveryMilliseconds, () => tell({ kind: 'alive' })),
+    // Nothing ends early in here: the worker kills the process instead, which frees everything.
+    signal: new AbortController().signal,
+  }).then((outcome) => tell({ kind: 'outcome', outcome }));
+});
