@@ -6,8 +6,8 @@ import { measureSource } from '../measuring/measure-source.ts';
 import type { MeasuringOutcome, MeasuringTask } from '../queue/measuring-contract.ts';
 import type { Progress } from '../queue/progress.ts';
 import { HashingSource } from '../storage/hashing-source.ts';
-import { objectSource, type ByteSource } from '../storage/object-source.ts';
-import { headObject, ObjectMissing, putObject, seriesKey, StorageTrouble } from '../storage/storage.ts';
+import type { ByteSource } from '../storage/piecewise-source.ts';
+import { headObject, ObjectMissing, objectSource, putObject, seriesKey, StorageTrouble } from '../storage/storage.ts';
 
 /** Named in the measurement's identity: another window, order, stream or decoder is another measurement. */
 const wholeFile = { window: null, audioChannels: 'all, in file order', stream: 0, decoder: 'by first bytes' };

@@ -18,6 +18,7 @@ import { getSignedUrl } from '@aws-sdk/s3-request-presigner';
 import { config } from '../config.ts';
 import { log } from '../log.ts';
 import { contentTypeOf } from './content-type.ts';
+import { PiecewiseSource, type ByteSource } from './piecewise-source.ts';
 
 /** Storage is away or answers wrongly: trouble of the surroundings, worth another try. */
 export class StorageTrouble extends Error {
@@ -187,6 +188,10 @@ export function getRange(key: string, start: number, end: number, signal?: Abort
     }
   });
 }
+
+/** The bytes of a stored object as the engine reads them. Throws ObjectMissing or StorageTrouble from `read`. */
+export const objectSource = (key: string, size: number, signal?: AbortSignal): ByteSource =>
+  new PiecewiseSource(size, (start, end) => getRange(key, start, end, signal));
 
 /** A whole small object, such as a measurement's series. Throws ObjectMissing or StorageTrouble. */
 export function getObject(key: string): Promise<Uint8Array> {

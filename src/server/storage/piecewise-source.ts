@@ -1,5 +1,4 @@
-/** An object of storage as the engine reads it: byte ranges, in constant memory, the next piece fetched ahead. */
-import { getRange } from './storage.ts';
+/** An object as the engine reads it: byte ranges, in constant memory, the next piece fetched ahead. */
 
 /** What the engine's containers read from: `read` gives fewer bytes only at the end. */
 export interface ByteSource {
@@ -56,7 +55,3 @@ export class PiecewiseSource implements ByteSource {
     return piece;
   }
 }
-
-/** The bytes of a stored object. Throws ObjectMissing or StorageTrouble from `read`. */
-export const objectSource = (key: string, size: number, signal?: AbortSignal): ByteSource =>
-  new PiecewiseSource(size, (start, end) => getRange(key, start, end, signal));
