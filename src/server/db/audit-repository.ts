@@ -26,6 +26,19 @@ export interface EventRecord {
   createdAt: Date;
 }
 
+interface EventRow {
+  id: number;
+  organisation_id: string;
+  organisation_name: string;
+  action: string;
+  subject_kind: string;
+  subject_id: string;
+  detail: Record<string, unknown>;
+  actor_id: string | null;
+  actor_name: string | null;
+  created_at: Date;
+}
+
 /** Adds an event in the caller's transaction; the actor is the scope's person, or nobody for the system. */
 export async function recordEvent(db: Db, scope: Scope, event: NewEvent): Promise<void> {
   await db('audit_events').insert({
@@ -46,7 +59,12 @@ export async function recordEvent(db: Db, scope: Scope, event: NewEvent): Promis
 export async function listEvents(
   db: Db,
   scope: Scope,
-  { beforeId, limit, q, actions }: { beforeId?: string; limit: number; q?: string; actions?: readonly string[] },
+  {
+    beforeId,
+    limit,
+    q,
+    actions,
+  }: { beforeId?: string; limit: number; q?: string; actions?: readonly string[] },
 ): Promise<EventRecord[]> {
   const rows = await db('audit_events as e')
     .join('organisations as o', 'o.id', 'e.organisation_id')
@@ -54,14 +72,19 @@ export async function listEvents(
     .modify((query) => {
       if (scope.kind === 'member') {
         const { organisationId } = scope;
-        query.where((w) => w.where('e.organisation_id', organisationId).orWhere('e.counterpart_id', organisationId));
+        query.where((w) =>
+          w.where('e.organisation_id', organisationId).orWhere('e.counterpart_id', organisationId),
+        );
       }
       if (beforeId !== undefined) query.where('e.id', '<', beforeId);
       if (actions) query.whereIn('e.action', actions as string[]);
       if (q) {
         const like = `%${q.replace(/[\\%_]/g, '\\$&')}%`;
         query.where((w) =>
-          w.whereILike('u.name', like).orWhereILike('o.name', like).orWhereRaw("replace(replace(e.action, '.', ' '), '_', ' ') ILIKE ?", [like])
+          w
+            .whereILike('u.name', like)
+            .orWhereILike('o.name', like)
+            .orWhereRaw("replace(replace(e.action, '.', ' '), '_', ' ') ILIKE ?", [like])
             .orWhereRaw('EXISTS (SELECT FROM jsonb_each_text(e.detail) d WHERE d.value ILIKE ?)', [like]),
         );
       }
@@ -69,7 +92,7 @@ export async function listEvents(
     .orderBy('e.id', 'desc')
     .limit(limit)
     .select('e.*', 'o.name as organisation_name', 'u.name as actor_name');
-  return rows.map((row) => ({
+  return rows.map((row: EventRow) => ({
     id: String(row.id),
     organisationId: row.organisation_id,
     organisationName: row.organisation_name,
@@ -77,7 +100,7 @@ export async function listEvents(
     subjectKind: row.subject_kind,
     subjectId: row.subject_id,
     detail: row.detail,
-    actor: row.actor_id ? { id: row.actor_id, name: row.actor_name } : null,
+    actor: row.actor_id && row.actor_name ? { id: row.actor_id, name: row.actor_name } : null,
     createdAt: row.created_at,
   }));
 }

@@ -11,7 +11,13 @@ interface SubmissionFacts {
 }
 
 export interface MailModels {
-  invitation: { organisationName: string; inviterName: string; roles: readonly Role[]; token: string; expiresAt: Date };
+  invitation: {
+    organisationName: string;
+    inviterName: string;
+    roles: readonly Role[];
+    token: string;
+    expiresAt: Date;
+  };
   password_reset: { name: string; token: string; expiresAt: Date };
   submission_received: SubmissionFacts & {
     supplierName: string;

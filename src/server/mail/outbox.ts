@@ -45,7 +45,11 @@ export async function queueMail(db: Db, mail: NewMail): Promise<void> {
 }
 
 /** Cancels what has not gone yet about a submission (a decision was taken back); returns how many. */
-export async function cancelMailAbout(db: Db, submissionId: string, kinds: readonly MailKind[]): Promise<number> {
+export async function cancelMailAbout(
+  db: Db,
+  submissionId: string,
+  kinds: readonly MailKind[],
+): Promise<number> {
   return db('mail_outbox')
     .where({ submission_id: submissionId, state: 'queued' })
     .whereIn('kind', kinds as MailKind[])

@@ -1,5 +1,4 @@
 /** Words of every mail, plain and HTML from one outline, so that both say the same. Everything given is escaped. */
-import { DateTime } from 'luxon';
 import { outcomeNames, roleNames } from '../../domain/vocabulary.ts';
 import type { MailKind, MailModels, MailWords } from './models.ts';
 
@@ -20,16 +19,35 @@ const caution =
   "This is a measurement against the rules entered here. The receiving party's own delivery spec and national law prevail.";
 
 const escapeHtml = (text: string) =>
-  text.replace(/[&<>"']/g, (sign) => ({ '&': '&amp;', '<': '&lt;', '>': '&gt;', '"': '&quot;', "'": '&#39;' })[sign] ?? sign);
+  text.replace(
+    /[&<>"']/g,
+    (sign) => ({ '&': '&amp;', '<': '&lt;', '>': '&gt;', '"': '&quot;', "'": '&#39;' })[sign] ?? sign,
+  );
 
 /** One line: a header can carry no line break, whatever a file is called. */
 const oneLine = (text: string) => text.replace(/[\u0000-\u001f\u007f\u2028\u2029]+/g, ' ').trim();
 
-const moment = (at: Date, zone: string) => DateTime.fromJSDate(at, { zone }).setLocale('en-GB').toFormat("d LLLL yyyy, HH:mm '('ZZZZ')'");
+/** '4 December 2026 at 18:00 GMT', in the zone given. */
+const moment = (at: Date, timeZone: string) =>
+  new Intl.DateTimeFormat('en-GB', {
+    timeZone,
+    day: 'numeric',
+    month: 'long',
+    year: 'numeric',
+    hour: '2-digit',
+    minute: '2-digit',
+    timeZoneName: 'short',
+  }).format(at);
 
 /** 'The Tallow Road 1.04', or the file's name where nothing else is known. */
-function titleOf(facts: { programmeTitle: string | null; episodeLabel: string | null; fileName: string }): string {
-  return facts.programmeTitle ? [facts.programmeTitle, facts.episodeLabel].filter(Boolean).join(' ') : facts.fileName;
+function titleOf(facts: {
+  programmeTitle: string | null;
+  episodeLabel: string | null;
+  fileName: string;
+}): string {
+  return facts.programmeTitle
+    ? [facts.programmeTitle, facts.episodeLabel].filter(Boolean).join(' ')
+    : facts.fileName;
 }
 
 type Outlines = { [K in MailKind]: (model: MailModels[K], origin: string) => Outline };
@@ -43,7 +61,7 @@ const outlines: Outlines = {
     ],
     link: { text: 'Accept the invitation', url: `${origin}/invitation/${m.token}` },
     after: [
-      `The link works once, until ${moment(m.expiresAt, 'utc')}.`,
+      `The link works once, until ${moment(m.expiresAt, 'Etc/UTC')}.`,
       'If you did not expect this, leave it: nothing happens without the link.',
     ],
   }),
@@ -53,7 +71,7 @@ const outlines: Outlines = {
     paragraphs: ['Somebody, most likely you, asked for a new password for your sign-in.'],
     link: { text: 'Choose a new password', url: `${origin}/reset-password/${m.token}` },
     after: [
-      `The link works once, until ${moment(m.expiresAt, 'utc')}. A new password ends every session of yours.`,
+      `The link works once, until ${moment(m.expiresAt, 'Etc/UTC')}. A new password ends every session of yours.`,
       'If it was not you, leave this mail: your password stays as it is.',
     ],
   }),
@@ -76,18 +94,27 @@ const outlines: Outlines = {
     paragraphs: [
       `${m.distributorName} has approved ${titleOf(m)} (${m.fileName}) for ${m.channelName}${m.waivers.length ? ', with a waiver' : ''}.`,
     ],
-    facts: m.waivers.length ? { head: 'Waived', rows: m.waivers.map((w) => [w.ruleName, w.reason]) } : undefined,
+    facts: m.waivers.length
+      ? { head: 'Waived', rows: m.waivers.map((w) => [w.ruleName, w.reason]) }
+      : undefined,
     link: { text: 'See the report', url: `${origin}/deliverables/${m.deliverableId}` },
     caution: true,
   }),
   submission_rejected: (m, origin) => ({
     subject: `Rejected: ${titleOf(m)} for ${m.channelName}`,
-    paragraphs: [`${m.distributorName} has rejected ${titleOf(m)} (${m.fileName}) for ${m.channelName}. The reason given:`],
+    paragraphs: [
+      `${m.distributorName} has rejected ${titleOf(m)} (${m.fileName}) for ${m.channelName}. The reason given:`,
+    ],
     quote: m.reason,
     facts: m.failingRules.length
       ? {
           head: 'Rules that it does not meet',
-          rows: m.failingRules.map((r) => [r.name, `measured ${r.judgedText}`, `permitted ${r.permittedText}`, r.marginText]),
+          rows: m.failingRules.map((r) => [
+            r.name,
+            `measured ${r.judgedText}`,
+            `permitted ${r.permittedText}`,
+            r.marginText,
+          ]),
         }
       : undefined,
     link: { text: 'See the report and where it happens', url: `${origin}/deliverables/${m.deliverableId}` },
@@ -96,11 +123,18 @@ const outlines: Outlines = {
 };
 
 function asText(o: Outline): string {
-  const facts = o.facts ? `${o.facts.head}:\n${o.facts.rows.map((row) => `  ${row[0]}: ${row.slice(1).join('; ')}`).join('\n')}` : null;
+  const facts = o.facts
+    ? `${o.facts.head}:\n${o.facts.rows.map((row) => `  ${row[0]}: ${row.slice(1).join('; ')}`).join('\n')}`
+    : null;
   const parts = [
     o.greeting ? `${o.greeting},` : null,
     ...o.paragraphs,
-    o.quote ? o.quote.split('\n').map((line) => `> ${line}`).join('\n') : null,
+    o.quote
+      ? o.quote
+          .split('\n')
+          .map((line) => `> ${line}`)
+          .join('\n')
+      : null,
     facts,
     `${o.link.text}:\n${o.link.url}`,
     ...(o.after ?? []),
@@ -111,7 +145,14 @@ function asText(o: Outline): string {
 }
 
 // Mail programs know no CSS variables: these are the tokens of Paper (src/styles/global.css) written out.
-const colour = { ground: '#f3efe6', sheet: '#fbf8f1', ink: '#17233c', muted: '#56617a', hairline: '#d9d1c0', teal: '#1b6a66' };
+const colour = {
+  ground: '#f3efe6',
+  sheet: '#fbf8f1',
+  ink: '#17233c',
+  muted: '#56617a',
+  hairline: '#d9d1c0',
+  teal: '#1b6a66',
+};
 
 function asHtml(o: Outline): string {
   const p = (text: string, more = '') => `<p style="margin:0 0 16px;${more}">${escapeHtml(text)}</p>`;
@@ -119,7 +160,9 @@ function asHtml(o: Outline): string {
   const cell = `padding:6px 16px 6px 0;border-top:1px solid ${colour.hairline};text-align:left;vertical-align:top;font-size:14px;`;
   const facts = o.facts
     ? `<table role="presentation" style="border-collapse:collapse;margin:0 0 16px;width:100%"><caption style="${small}text-align:left;padding:0 0 6px">${escapeHtml(o.facts.head)}</caption>${o.facts.rows
-        .map((row) => `<tr>${row.map((text) => `<td style="${cell}">${escapeHtml(text)}</td>`).join('')}</tr>`)
+        .map(
+          (row) => `<tr>${row.map((text) => `<td style="${cell}">${escapeHtml(text)}</td>`).join('')}</tr>`,
+        )
         .join('')}</table>`
     : '';
   const quote = o.quote

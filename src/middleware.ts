@@ -1,0 +1,85 @@
+// Who is asking, and may they: every request passes here before its page or endpoint.
+import type { APIContext, MiddlewareHandler } from 'astro';
+import { getSession } from 'auth-astro/server';
+import { allows, routes, type Need } from '@/domain/permissions.ts';
+import { withRequestOrigin } from '@/server/auth/request-origin.ts';
+import { config } from '@/server/config.ts';
+import type { MemberScope } from '@/server/scope.ts';
+import { refusalStatus, type RefusalCode } from '@/server/refusals.ts';
+
+const safeMethods = new Set(['GET', 'HEAD', 'OPTIONS']);
+const isApi = (context: APIContext) => context.url.pathname.startsWith('/api/');
+
+const problem = (code: RefusalCode | 'method_not_allowed', message: string) =>
+  Response.json(
+    { error: { code, message } },
+    {
+      status: code === 'method_not_allowed' ? 405 : refusalStatus[code],
+      headers: { 'cache-control': 'no-store' },
+    },
+  );
+
+/** Astro looks only at form-like bodies; a page of somebody else's must not send JSON with our cookie either. */
+function isForeign(context: APIContext): boolean {
+  if (safeMethods.has(context.request.method)) return false;
+  const origin = context.request.headers.get('origin');
+  if (origin === null) return context.request.headers.get('sec-fetch-site') === 'cross-site';
+  return origin !== context.url.origin && origin !== new URL(config().APP_ORIGIN).origin;
+}
+
+/** What the route asks of this method: `undefined` when the policy does not know the route or the method. */
+function needOf(context: APIContext): { known: boolean; need: Need | undefined } {
+  const route = Object.hasOwn(routes, context.routePattern) ? routes[context.routePattern] : undefined;
+  const method = context.request.method === 'HEAD' ? 'GET' : context.request.method;
+  return { known: route !== undefined, need: route?.[method as keyof typeof route] };
+}
+
+function mayPass(scope: MemberScope | null, need: Need | undefined): boolean {
+  if (need === undefined) return false;
+  if (need === 'anyone') return true;
+  return scope !== null && (need === 'signed-in' || allows(scope, need));
+}
+
+function secured(response: Response): Response {
+  response.headers.set('x-content-type-options', 'nosniff');
+  response.headers.set('referrer-policy', 'same-origin');
+  response.headers.set('x-frame-options', 'DENY');
+  if (
+    !response.headers.has('cache-control') &&
+    response.headers.get('content-type')?.startsWith('text/html')
+  ) {
+    // What one person sees must not come back out of a cache for the next one at that desk.
+    response.headers.set('cache-control', 'no-store');
+  }
+  return response;
+}
+
+async function answer(context: APIContext, next: Parameters<MiddlewareHandler>[1]): Promise<Response> {
+  const { pathname, search } = context.url;
+  if (isForeign(context)) return problem('forbidden', 'This request comes from another site and is refused.');
+  const { known, need } = needOf(context);
+  // Auth.js answers for itself, and health must not need a database session.
+  const asks = !pathname.startsWith('/api/auth/') && pathname !== '/api/health';
+  if (asks) context.locals.scope = (await getSession(context.request))?.scope ?? null;
+  if (mayPass(context.locals.scope, need)) {
+    if (context.routePattern === '/404' && isApi(context))
+      return problem('not_found', 'There is nothing under this address.');
+    return next();
+  }
+  if (context.locals.scope === null) {
+    if (isApi(context)) return problem('unauthenticated', 'Sign in to go on.');
+    return context.redirect(`/sign-in?callbackUrl=${encodeURIComponent(pathname + search)}`, 303);
+  }
+  if (known && need === undefined)
+    return problem('method_not_allowed', 'This address does not take that method.');
+  if (isApi(context)) return problem('forbidden', 'Your role in this organisation does not include this.');
+  return next('/403');
+}
+
+export const onRequest: MiddlewareHandler = (context, next) => {
+  context.locals.scope = null;
+  const userAgent = context.request.headers.get('user-agent') ?? '';
+  return withRequestOrigin({ address: context.clientAddress, userAgent }, async () =>
+    secured(await answer(context, next)),
+  );
+};
