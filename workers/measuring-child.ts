@@ -26,10 +26,15 @@ process.on('SIGTERM', () => {});
 
 process.on('message', (raw) => {
   const { task } = toChildSchema.parse(raw);
+  // So that whoever looks at the machine sees which file it is busy with.
+  process.title = `plimsoll measuring ${task.deliverableId}`;
   void measureObject(task, {
     onProgress: throttled(progressEveryMilliseconds, (progress) => tell({ kind: 'progress', progress })),
     onRead: throttled(aliveEveryMilliseconds, () => tell({ kind: 'alive' })),
     // Nothing ends early in here: the worker kills the process instead, which frees everything.
     signal: new AbortController().signal,
-  }).then((outcome) => tell({ kind: 'outcome', outcome }));
+  }).then((outcome) => {
+    process.title = 'plimsoll measuring nothing';
+    tell({ kind: 'outcome', outcome });
+  });
 });

@@ -17,7 +17,7 @@ import {
   type NewFile,
 } from '../../../src/server/services/uploads.ts';
 import { getObject, headObject } from '../../../src/server/storage/storage.ts';
-import { makeChannel, makePerson, openServiceWorld } from '../service-world.ts';
+import { makeAgreedChannel, makePerson, openServiceWorld } from '../service-world.ts';
 
 let world: Awaited<ReturnType<typeof openServiceWorld>>;
 let engineer: MemberScope;
@@ -73,7 +73,7 @@ async function deliver(scope: MemberScope, given = file(), of = bytes) {
 /** A client that keeps to nobody's signature. */
 const strayClient = () =>
   new S3Client({
-    endpoint: world.environment.S3_ENDPOINT,
+    endpoint: process.env.S3_ENDPOINT,
     region: 'us-east-1',
     credentials: { accessKeyId: 'S3RVER', secretAccessKey: 'S3RVER' },
     forcePathStyle: true,
@@ -183,7 +183,7 @@ describe('uploading', () => {
     const upload = await begin(engineer, file());
     const { items } = value(await signParts(engineer, upload.deliverableId, [1, 3]));
     for (const { url } of items) expect(new URL(url).searchParams.get('X-Amz-SignedHeaders')?.split(';')).toContain('content-length');
-    expect(new URL(items[0].url).origin).toBe(world.environment.S3_PUBLIC_ENDPOINT);
+    expect(new URL(items[0].url).origin).toBe(process.env.S3_PUBLIC_ENDPOINT);
   });
 
   it('refuses when fewer bytes lie in storage than the file has, keeps none of them, and takes the file anew', async () => {
@@ -270,8 +270,8 @@ describe('details of a deliverable', () => {
   });
 
   it('takes channels with an agreement, and none without', async () => {
-    const agreed = await makeChannel(distributor, 'Harrow One', engineer);
-    const foreign = await makeChannel(distributor, 'Harrow Two', colleagueOfAnother);
+    const agreed = await makeAgreedChannel(distributor, engineer);
+    const foreign = await makeAgreedChannel(distributor, colleagueOfAnother);
     const upload = await begin(engineer, file({ details: { channelIds: [agreed] } }));
     expect(await db()('deliverable_channels').where({ deliverable_id: upload.deliverableId }).pluck('channel_id')).toEqual([agreed]);
     const { items } = value(await createUploads(engineer, [file({ details: { channelIds: [agreed, foreign] } })]));
