@@ -25,7 +25,8 @@ let queue: Queue<MeasuringJob> | undefined;
 export function measuringQueue(): Queue<MeasuringJob> {
   if (!queue) {
     queue = new Queue<MeasuringJob>(measuringQueueName, { connection: redis(), defaultJobOptions: jobOptions });
-    queue.on('error', (error) => log.warn({ err: error.message }, 'measuring queue'));
+    // The connection's own listener has warned of these already.
+    queue.on('error', (error) => log.debug({ err: error.message }, 'measuring queue'));
   }
   return queue;
 }
