@@ -30,7 +30,7 @@ process.on('message', (raw) => {
   process.title = `plimsoll measuring ${task.deliverableId}`;
   void measureObject(task, {
     onProgress: throttled(progressEveryMilliseconds, (progress) => tell({ kind: 'progress', progress })),
-    onRead: throttled(aliveEveryMilliseconds, () => tell({ kind: 'alive' })),
+    onRead: throttled<void>(aliveEveryMilliseconds, () => tell({ kind: 'alive' })),
     // Nothing ends early in here: the worker kills the process instead, which frees everything.
     signal: new AbortController().signal,
   }).then((outcome) => {

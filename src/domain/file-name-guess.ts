@@ -31,7 +31,13 @@ const layoutWords: Record<string, string> = {
   mne: 'M&E',
 };
 /** The same without a dot: a number, so only where the name speaks of the mix or has said its episode. */
-const layoutNumbers: Record<string, string> = { '20': 'stereo', '51': '5.1', '71': '7.1', '514': '5.1.4', '714': '7.1.4' };
+const layoutNumbers: Record<string, string> = {
+  '20': 'stereo',
+  '51': '5.1',
+  '71': '7.1',
+  '514': '5.1.4',
+  '714': '7.1.4',
+};
 const fillers =
   /^(mix|fullmix|full|final|master|mstr|print|deliver|delivery|export|bounce|16b|24b|16bit|24bit|44k|48k|96k|44100|48000|96000|wav|r128)$/;
 
@@ -42,9 +48,13 @@ function episodeIn(word: string, next: string): { label: string; took: number } 
   const pair = /^s(\d{1,2})$/.exec(word);
   const second = /^e(\d{1,3})$/.exec(next);
   if (pair && second) return { label: seasonEpisode(pair[1], second[1]), took: 2 };
-  const season = /^s(\d{1,2})e(\d{1,3})$/.exec(word) ?? /^(\d{1,2})x(\d{2,3})$/.exec(word) ?? /^(\d{1,2})\.(\d{1,2})$/.exec(word);
+  const season =
+    /^s(\d{1,2})e(\d{1,3})$/.exec(word) ??
+    /^(\d{1,2})x(\d{2,3})$/.exec(word) ??
+    /^(\d{1,2})\.(\d{1,2})$/.exec(word);
   if (season) return { label: seasonEpisode(season[1], season[2]), took: 1 };
-  if (/^(ep|eps|episode)$/.test(word) && /^\d{1,4}$/.test(next)) return { label: String(Number(next)), took: 2 };
+  if (/^(ep|eps|episode)$/.test(word) && /^\d{1,4}$/.test(next))
+    return { label: String(Number(next)), took: 2 };
   const glued = /^(?:ep|episode|e)(\d{1,4})$/.exec(word);
   return glued ? { label: String(Number(glued[1])), took: 1 } : null;
 }
@@ -52,7 +62,9 @@ function episodeIn(word: string, next: string): { label: string; took: number } 
 function versionIn(word: string, next: string): { label: string; took: number } | null {
   const glued = /^(?:v|ver|version|rev|take|tk)(\d{1,3})$/.exec(word);
   if (glued) return { label: `v${Number(glued[1])}`, took: 1 };
-  return /^(v|ver|version|rev|take)$/.test(word) && /^\d{1,3}$/.test(next) ? { label: `v${Number(next)}`, took: 2 } : null;
+  return /^(v|ver|version|rev|take)$/.test(word) && /^\d{1,3}$/.test(next)
+    ? { label: `v${Number(next)}`, took: 2 }
+    : null;
 }
 
 /** A number that stands alone: 104 is the fourth of the first season, as editors write it. */
@@ -81,11 +93,11 @@ export function guessFromFileName(fileName: string, knownProgrammes: readonly st
     const begun = title.length > 0;
     const kind = kindWords.find(([, pattern]) => pattern.test(word.replace(/\d+$/, '')))?.[0];
     const glued = /^(?:full)?mix(st|stereo|mono|20|51|71|514|714)$/.exec(word)?.[1];
-    const layout =
+    const layout: string | undefined =
       (glued && (layoutWords[glued] ?? layoutNumbers[glued])) ??
       (begun ? layoutWords[word] : undefined) ??
       (begun && (ofTheMix || episode !== null) ? layoutNumbers[word] : undefined);
-    const found = layout ? null : episodeIn(word, next);
+    const found: ReturnType<typeof episodeIn> = layout ? null : episodeIn(word, next);
     const revision = versionIn(word, next);
     if (layout) {
       layouts.add(layout);
@@ -109,7 +121,8 @@ export function guessFromFileName(fileName: string, knownProgrammes: readonly st
     }
   }
 
-  const programmeTitle = knownProgramme(title, knownProgrammes) ?? (title.length > 0 ? titleCase(title) : null);
+  const programmeTitle =
+    knownProgramme(title, knownProgrammes) ?? (title.length > 0 ? titleCase(title) : null);
   const versionWords = [...layouts, ...(version ? [version] : [])];
   return {
     programmeTitle,
@@ -158,4 +171,6 @@ function knownProgramme(words: readonly string[], titles: readonly string[]): st
 }
 
 const titleCase = (words: readonly string[]) =>
-  words.map((word) => (word === word.toLowerCase() ? word.charAt(0).toUpperCase() + word.slice(1) : word)).join(' ');
+  words
+    .map((word) => (word === word.toLowerCase() ? word.charAt(0).toUpperCase() + word.slice(1) : word))
+    .join(' ');

@@ -39,7 +39,10 @@ function parseJson(text: string): unknown {
 }
 
 /** Listens to an organisation's events until the returned function is called. Resolves once Redis has confirmed. */
-export function listenToEvents(organisationId: string, listener: Listener): { ready: Promise<void>; stop: () => void } {
+export function listenToEvents(
+  organisationId: string,
+  listener: Listener,
+): { ready: Promise<void>; stop: () => void } {
   const topic = eventsTopic(organisationId);
   const all = listeners.get(topic) ?? new Set<Listener>();
   listeners.set(topic, all.add(listener));
@@ -49,7 +52,9 @@ export function listenToEvents(organisationId: string, listener: Listener): { re
   const stop = () => {
     if (!all.delete(listener) || all.size > 0) return;
     listeners.delete(topic);
-    redis.unsubscribe(topic).catch((error: unknown) => log.warn({ err: error, topic }, 'could not stop listening'));
+    redis
+      .unsubscribe(topic)
+      .catch((error: unknown) => log.warn({ err: error, topic }, 'could not stop listening'));
   };
   return { ready, stop };
 }

@@ -9,7 +9,11 @@ export const eventsTopic = (organisationId: string) => `events:${organisationId}
  * Tells every open browser of the organisations. Never throws: losing an event is harmless, since pages read the truth
  * again on reconnect, and what happened has been committed already.
  */
-export async function publishEvent(redis: Redis, organisationIds: readonly string[], event: LiveEvent): Promise<void> {
+export async function publishEvent(
+  redis: Redis,
+  organisationIds: readonly string[],
+  event: LiveEvent,
+): Promise<void> {
   const text = JSON.stringify(event);
   try {
     await Promise.all([...new Set(organisationIds)].map((id) => redis.publish(eventsTopic(id), text)));

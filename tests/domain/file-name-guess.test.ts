@@ -20,19 +20,31 @@ describe('guessing from a file name', () => {
     ['salt_signal_ep12.wav', 'Salt & Signal', '12', null, 'long_form'],
     ['Third Lantern podcast Episode 5 mono.mp3', 'Third Lantern', '5', 'mono', 'podcast_episode'],
   ])('reads %s', (name, programmeTitle, episodeLabel, versionLabel, contentKind) => {
-    expect(guessFromFileName(name, known)).toEqual({ programmeTitle, episodeLabel, versionLabel, contentKind });
+    expect(guessFromFileName(name, known)).toEqual({
+      programmeTitle,
+      episodeLabel,
+      versionLabel,
+      contentKind,
+    });
   });
 
   it('takes the title from the name where no programme is known', () => {
-    expect(guessFromFileName('harbour_lights_ep3_v1.wav')).toMatchObject({ programmeTitle: 'Harbour Lights', episodeLabel: '3' });
+    expect(guessFromFileName('harbour_lights_ep3_v1.wav')).toMatchObject({
+      programmeTitle: 'Harbour Lights',
+      episodeLabel: '3',
+    });
   });
 
   it('does not choose between two programmes that the name tells of alike', () => {
-    expect(guessFromFileName('harbour_02.wav', ['Harbour Lights', 'Harbour Nights']).programmeTitle).toBe('Harbour');
+    expect(guessFromFileName('harbour_02.wav', ['Harbour Lights', 'Harbour Nights']).programmeTitle).toBe(
+      'Harbour',
+    );
   });
 
   it('prefers the programme of which the name tells more', () => {
-    expect(guessFromFileName('harbour nights 2.wav', ['Harbour', 'Harbour Nights']).programmeTitle).toBe('Harbour Nights');
+    expect(guessFromFileName('harbour nights 2.wav', ['Harbour', 'Harbour Nights']).programmeTitle).toBe(
+      'Harbour Nights',
+    );
   });
 
   it('keeps a number that is the title', () => {

@@ -42,7 +42,8 @@ export function measuringProcess(deliverableId: string): number | undefined {
   for (const name of readdirSync('/proc')) {
     if (!/^\d+$/.test(name)) continue;
     try {
-      if (readFileSync(`/proc/${name}/cmdline`, 'utf8').includes(`plimsoll measuring ${deliverableId}`)) return Number(name);
+      if (readFileSync(`/proc/${name}/cmdline`, 'utf8').includes(`plimsoll measuring ${deliverableId}`))
+        return Number(name);
     } catch {
       continue; // it ended while we looked
     }
@@ -69,7 +70,8 @@ export async function listenTo(organisationId: string): Promise<EventLog> {
   return {
     async next(fits) {
       for (;;) {
-        for (let event = heard.shift(); event; event = heard.shift()) if (event.kind === 'deliverable' && fits(event)) return;
+        for (let event = heard.shift(); event; event = heard.shift())
+          if (event.kind === 'deliverable' && fits(event)) return;
         await new Promise<void>((resolve) => (wake = resolve));
       }
     },

@@ -7,7 +7,13 @@ import { arrivedFile } from '../server/arrived-file.ts';
 import { makePerson, openServiceWorld } from '../server/service-world.ts';
 import { gateBefore, type StorageGate } from '../server/storage-gate.ts';
 import { sineWave } from '../server/wave-file.ts';
-import { listenTo, measuringProcess, startWorker, type EventLog, type WorkerProcess } from './measuring-processes.ts';
+import {
+  listenTo,
+  measuringProcess,
+  startWorker,
+  type EventLog,
+  type WorkerProcess,
+} from './measuring-processes.ts';
 
 let world: Awaited<ReturnType<typeof openServiceWorld>>;
 let gate: StorageGate;
@@ -47,12 +53,19 @@ const worker = async () => {
   workers.push(started);
   return started;
 };
-const begins = (id: string) => events.next((event) => event.id === id && event.state === 'measuring' && event.progress === null);
-const isUnderWay = (id: string) => events.next((event) => event.id === id && (event.progress?.secondsDone ?? 0) > 0);
-const reaches = (id: string, state: string) => events.next((event) => event.id === id && event.state === state);
+const begins = (id: string) =>
+  events.next((event) => event.id === id && event.state === 'measuring' && event.progress === null);
+const isUnderWay = (id: string) =>
+  events.next((event) => event.id === id && (event.progress?.secondsDone ?? 0) > 0);
+const reaches = (id: string, state: string) =>
+  events.next((event) => event.id === id && event.state === state);
 /** With pauses short enough for a test; growing ones are the queue's default. */
 const enqueueImpatiently = (id: string) =>
-  measuringQueue().add('measure', { deliverableId: id }, { jobId: measuringJobId(id), attempts: 8, backoff: { type: 'fixed', delay: 50 } });
+  measuringQueue().add(
+    'measure',
+    { deliverableId: id },
+    { jobId: measuringJobId(id), attempts: 8, backoff: { type: 'fixed', delay: 50 } },
+  );
 
 describe('kill -9 of a worker in mid-measurement', () => {
   it(
@@ -76,7 +89,9 @@ describe('kill -9 of a worker in mid-measurement', () => {
       expect(made).toHaveLength(1);
       expect(made[0].format.durationSeconds).toBeCloseTo(100, 6);
       expect((await getObject(made[0].series_key)).length).toBeGreaterThan(0);
-      expect(await db()('audit_events').where({ subject_id: id, action: 'deliverable.measured' })).toHaveLength(1);
+      expect(
+        await db()('audit_events').where({ subject_id: id, action: 'deliverable.measured' }),
+      ).toHaveLength(1);
       expect(measuringProcess(id)).toBeUndefined();
     },
     long,
@@ -100,7 +115,10 @@ describe('a file that kills whoever measures it', () => {
         process.kill(measuringProcess(poison) ?? -1, 'SIGKILL');
       }
       await reaches(poison, 'unreadable');
-      expect(await row(poison)).toMatchObject({ reason_code: 'kills-worker', reason: expect.stringMatching(/broke down 3 times/) });
+      expect(await row(poison)).toMatchObject({
+        reason_code: 'kills-worker',
+        reason: expect.stringMatching(/broke down 3 times/),
+      });
       expect(await measurements(poison)).toHaveLength(0);
 
       gate.release();

@@ -36,7 +36,10 @@ async function doorBefore(url: URL) {
       for (const socket of sockets) socket.destroy();
     },
     open: () => (shut = false),
-    close: () => new Promise<void>((resolve) => (server.close(() => resolve()), sockets.forEach((socket) => socket.destroy()))),
+    close: () =>
+      new Promise<void>(
+        (resolve) => (server.close(() => resolve()), sockets.forEach((socket) => socket.destroy())),
+      ),
   };
 }
 
@@ -58,13 +61,19 @@ const bytes = new Uint8Array(1000).fill(7);
 
 describe('with Redis away', () => {
   it('an upload still arrives, and is on the queue once Redis is back', async () => {
-    const begun = await createUploads(engineer, [{ fileName: 'spot07.wav', byteSize: bytes.length, lastModifiedMs: 1, details: {} }]);
+    const begun = await createUploads(engineer, [
+      { fileName: 'spot07.wav', byteSize: bytes.length, lastModifiedMs: 1, details: {} },
+    ]);
     if (!begun.ok || !begun.value.items[0].ok) throw new Error('no upload');
     const id = begun.value.items[0].value.deliverableId;
     const signed = await signParts(engineer, id, [1]);
     if (!signed.ok) throw new Error('not signed');
     const put = await fetch(signed.value.items[0].url, { method: 'PUT', body: bytes });
-    await recordPart(engineer, id, { number: 1, etag: put.headers.get('etag') ?? '', byteSize: bytes.length });
+    await recordPart(engineer, id, {
+      number: 1,
+      etag: put.headers.get('etag') ?? '',
+      byteSize: bytes.length,
+    });
 
     door.shut();
     const arrived = await completeUpload(engineer, id, createHash('sha256').update(bytes).digest('hex'));

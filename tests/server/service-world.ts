@@ -36,7 +36,10 @@ export async function openServiceWorld(redisDatabase: number, overrides: Record<
 }
 
 /** A person with these roles in an organisation of their own. */
-export async function makePerson(roles: Role[] = ['mix_engineer'], side: 'supplier' | 'distributor' = 'supplier'): Promise<MemberScope> {
+export async function makePerson(
+  roles: Role[] = ['mix_engineer'],
+  side: 'supplier' | 'distributor' = 'supplier',
+): Promise<MemberScope> {
   return makeMember(db(), await makeOrganisation(db(), side), roles);
 }
 

@@ -23,7 +23,13 @@ export async function gateBefore(endpoint: string | undefined): Promise<StorageG
 
   const pass = (from: IncomingMessage, to: ServerResponse) => {
     const onward = request(
-      { host: target.hostname, port: target.port, method: from.method, path: from.url, headers: from.headers },
+      {
+        host: target.hostname,
+        port: target.port,
+        method: from.method,
+        path: from.url,
+        headers: from.headers,
+      },
       (answer) => {
         to.writeHead(answer.statusCode ?? 502, answer.headers);
         answer.pipe(to);
@@ -38,7 +44,8 @@ export async function gateBefore(endpoint: string | undefined): Promise<StorageG
     if (away) return void from.socket.destroy();
     const start = Number(/^bytes=(\d+)-/.exec(from.headers.range ?? '')?.[1] ?? -1);
     const path = new URL(from.url ?? '/', endpoint).pathname;
-    if (held && from.method === 'GET' && path.endsWith(held.keyEnd) && start >= held.fromByte) waiting.push(() => pass(from, to));
+    if (held && from.method === 'GET' && path.endsWith(held.keyEnd) && start >= held.fromByte)
+      waiting.push(() => pass(from, to));
     else pass(from, to);
   });
   server.on('connection', (socket) => {

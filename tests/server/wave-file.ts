@@ -17,7 +17,9 @@ export function sineWave(seconds: number, sampleRateHz = 48_000): Uint8Array {
   file.writeUInt32LE(dataBytes, 40);
   // 48 samples are one period at 48 kHz: the table repeats exactly.
   const period = Math.round(sampleRateHz / 1000);
-  const table = Array.from({ length: period }, (_, i) => Math.round(3276.8 * Math.sin((2 * Math.PI * i) / period)));
+  const table = Array.from({ length: period }, (_, i) =>
+    Math.round(3276.8 * Math.sin((2 * Math.PI * i) / period)),
+  );
   for (let frame = 0; frame < frames; frame++) {
     const sample = table[frame % period];
     file.writeInt16LE(sample, 44 + frame * 4);

@@ -5,7 +5,12 @@ import type { Db } from './connection.ts';
 import { within } from './within.ts';
 
 /** The programme of this title in any case of letters, made when there is none. */
-export async function findOrMakeProgramme(db: Db, _scope: Scope, organisationId: string, title: string): Promise<string> {
+export async function findOrMakeProgramme(
+  db: Db,
+  _scope: Scope,
+  organisationId: string,
+  title: string,
+): Promise<string> {
   await db.raw(
     'INSERT INTO programmes (organisation_id, title) VALUES (?, ?) ON CONFLICT (organisation_id, lower(title)) DO NOTHING',
     [organisationId, title],
@@ -51,7 +56,12 @@ export async function updateDetails(
   db: Db,
   scope: Scope,
   id: string,
-  details: { programmeId?: string | null; episodeId?: string | null; versionLabel?: string; contentKind?: ContentKind },
+  details: {
+    programmeId?: string | null;
+    episodeId?: string | null;
+    versionLabel?: string;
+    contentKind?: ContentKind;
+  },
 ): Promise<void> {
   const changes = Object.fromEntries(
     Object.entries({
@@ -98,7 +108,11 @@ export async function listChosenChannels(
       db.raw(`EXISTS (SELECT FROM submissions s WHERE s.deliverable_id = dc.deliverable_id AND s.channel_id = dc.channel_id
         AND s.state IN ('awaiting_review', 'approved', 'approved_with_waiver')) AS has_submission`),
     );
-  return rows.map((row) => ({ channelId: row.channel_id, channelName: row.name, hasSubmission: row.has_submission }));
+  return rows.map((row) => ({
+    channelId: row.channel_id,
+    channelName: row.name,
+    hasSubmission: row.has_submission,
+  }));
 }
 
 export async function addChannels(
@@ -121,7 +135,12 @@ export async function addChannels(
     .ignore();
 }
 
-export async function removeChannels(db: Db, scope: Scope, deliverableId: string, channelIds: readonly string[]): Promise<void> {
+export async function removeChannels(
+  db: Db,
+  scope: Scope,
+  deliverableId: string,
+  channelIds: readonly string[],
+): Promise<void> {
   if (channelIds.length === 0) return;
   await db('deliverable_channels')
     .where('deliverable_id', deliverableId)

@@ -63,7 +63,11 @@ const toCore = (row: CoreRow): DeliverableCore => ({
 });
 
 /** A deliverable that was not discarded; undefined when the scope has none of that id. */
-export async function findDeliverableCore(db: Db, scope: Scope, id: string): Promise<DeliverableCore | undefined> {
+export async function findDeliverableCore(
+  db: Db,
+  scope: Scope,
+  id: string,
+): Promise<DeliverableCore | undefined> {
   const row = await db<CoreRow>('deliverables')
     .where('id', id)
     .whereNull('discarded_at')
@@ -75,7 +79,10 @@ export async function findDeliverableCore(db: Db, scope: Scope, id: string): Pro
 export async function insertDeliverable(
   db: Db,
   _scope: Scope,
-  deliverable: Pick<DeliverableCore, 'id' | 'organisationId' | 'uploadedBy' | 'fileName' | 'byteSize' | 'storageKey'>,
+  deliverable: Pick<
+    DeliverableCore,
+    'id' | 'organisationId' | 'uploadedBy' | 'fileName' | 'byteSize' | 'storageKey'
+  >,
 ): Promise<void> {
   await db('deliverables').insert({
     id: deliverable.id,
@@ -88,7 +95,12 @@ export async function insertDeliverable(
 }
 
 /** From 'uploading' to 'waiting'; false when it had left 'uploading' already. */
-export async function markArrived(db: Db, scope: Scope, id: string, sha256Declared: string): Promise<boolean> {
+export async function markArrived(
+  db: Db,
+  scope: Scope,
+  id: string,
+  sha256Declared: string,
+): Promise<boolean> {
   const changed = await db('deliverables')
     .where({ id, state: 'uploading', discarded_at: null })
     .modify(within(scope, 'organisation_id'))

@@ -10,20 +10,27 @@ import type { Db } from './connection.ts';
 export async function readSessionStanding(db: Db, scope: MemberScope): Promise<string | null> {
   const row = await db('sessions as s')
     .join('users as u', 'u.id', 's.user_id')
-    .join('memberships as m', (on) => on.on('m.user_id', 's.user_id').andOn('m.organisation_id', 's.organisation_id'))
+    .join('memberships as m', (on) =>
+      on.on('m.user_id', 's.user_id').andOn('m.organisation_id', 's.organisation_id'),
+    )
     .where({ 's.id': scope.sessionId, 's.user_id': scope.userId, 's.organisation_id': scope.organisationId })
     .whereNull('s.revoked_at')
     .whereNull('m.removed_at')
     .where('s.expires_at', '>', db.fn.now())
     .first<{ session_version: number; roles: string | null } | undefined>(
       'u.session_version',
-      db.raw(`(SELECT string_agg(r.role, ',' ORDER BY r.role) FROM membership_roles r WHERE r.membership_id = m.id) AS roles`),
+      db.raw(
+        `(SELECT string_agg(r.role, ',' ORDER BY r.role) FROM membership_roles r WHERE r.membership_id = m.id) AS roles`,
+      ),
     );
   return row ? `${row.session_version} ${row.roles ?? ''}` : null;
 }
 
 /** Deliverables of the person's organisation that wait or are measured now, newest first; at most 500. */
-export async function listOnTheirWay(db: Db, scope: MemberScope): Promise<{ id: string; state: DeliverableState }[]> {
+export async function listOnTheirWay(
+  db: Db,
+  scope: MemberScope,
+): Promise<{ id: string; state: DeliverableState }[]> {
   return db('deliverables')
     .where('organisation_id', scope.organisationId)
     .whereIn('state', ['waiting', 'measuring'])

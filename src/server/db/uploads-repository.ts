@@ -79,7 +79,11 @@ const select = (db: Db, scope: Scope) =>
 const open = { 'u.completed_at': null, 'u.aborted_at': null };
 
 /** The upload of a deliverable in any state; undefined when the scope has none of that id. */
-export async function findUpload(db: Db, scope: Scope, deliverableId: string): Promise<UploadRecord | undefined> {
+export async function findUpload(
+  db: Db,
+  scope: Scope,
+  deliverableId: string,
+): Promise<UploadRecord | undefined> {
   const [row] = await select(db, scope).where('u.deliverable_id', deliverableId);
   return row && toRecord(row);
 }
@@ -98,7 +102,11 @@ export async function findSameFile(
 ): Promise<UploadRecord[]> {
   const rows = await select(db, scope)
     .where(open)
-    .where({ 'd.file_name': file.fileName, 'd.byte_size': file.byteSize, 'u.last_modified_ms': file.lastModifiedMs })
+    .where({
+      'd.file_name': file.fileName,
+      'd.byte_size': file.byteSize,
+      'u.last_modified_ms': file.lastModifiedMs,
+    })
     .orderBy('u.created_at', 'desc')
     .limit(20);
   return rows.map(toRecord);
@@ -106,7 +114,11 @@ export async function findSameFile(
 
 /** Open uploads begun before a moment, for the sweep. */
 export async function findOpenUploadsBefore(db: Db, scope: Scope, moment: Date): Promise<UploadRecord[]> {
-  const rows = await select(db, scope).where(open).where('u.created_at', '<', moment).orderBy('u.created_at').limit(200);
+  const rows = await select(db, scope)
+    .where(open)
+    .where('u.created_at', '<', moment)
+    .orderBy('u.created_at')
+    .limit(200);
   return rows.map(toRecord);
 }
 
@@ -135,7 +147,12 @@ export interface PartRecord {
 }
 
 /** Writes down a part that storage took; told twice, the later one stands. */
-export async function upsertPart(db: Db, _scope: Scope, upload: UploadRecord, part: PartRecord): Promise<void> {
+export async function upsertPart(
+  db: Db,
+  _scope: Scope,
+  upload: UploadRecord,
+  part: PartRecord,
+): Promise<void> {
   await db('upload_parts')
     .insert({
       deliverable_id: upload.deliverableId,
@@ -159,11 +176,19 @@ export async function listParts(db: Db, scope: Scope, deliverableId: string): Pr
 
 /** Forgets what storage turned out not to hold, so that it is sent again. */
 export async function deleteParts(db: Db, scope: Scope, deliverableId: string): Promise<void> {
-  await db('upload_parts').where('deliverable_id', deliverableId).modify(within(scope, 'organisation_id')).delete();
+  await db('upload_parts')
+    .where('deliverable_id', deliverableId)
+    .modify(within(scope, 'organisation_id'))
+    .delete();
 }
 
 /** Ends an open upload; false when it had ended already. */
-export async function endUpload(db: Db, scope: Scope, deliverableId: string, how: 'completed' | 'aborted'): Promise<boolean> {
+export async function endUpload(
+  db: Db,
+  scope: Scope,
+  deliverableId: string,
+  how: 'completed' | 'aborted',
+): Promise<boolean> {
   const ended = await db('uploads')
     .where({ deliverable_id: deliverableId, completed_at: null, aborted_at: null })
     .modify(within(scope, 'organisation_id'))

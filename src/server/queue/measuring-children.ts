@@ -5,7 +5,12 @@
 import { fork, type ChildProcess } from 'node:child_process';
 import { fileURLToPath } from 'node:url';
 import { log } from '../log.ts';
-import { fromChildSchema, type MeasureElsewhere, type MeasuringOutcome, type ToChild } from './measuring-contract.ts';
+import {
+  fromChildSchema,
+  type MeasureElsewhere,
+  type MeasuringOutcome,
+  type ToChild,
+} from './measuring-contract.ts';
 
 /** Neither progress nor a read for this long: it hangs. */
 const silenceMilliseconds = 5 * 60_000;
@@ -68,7 +73,9 @@ export function measuringChildren(childFile: URL): MeasuringChildren {
           });
       });
       child.on('error', (error) => die(error.message));
-      child.on('exit', (code, killedBy) => end(() => reject(new Error(`ended with ${killedBy ?? `status ${code}`}`))));
+      child.on('exit', (code, killedBy) =>
+        end(() => reject(new Error(`ended with ${killedBy ?? `status ${code}`}`))),
+      );
       signal.addEventListener('abort', onAbort);
       heard();
       const order: ToChild = { kind: 'measure', task };

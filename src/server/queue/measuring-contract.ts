@@ -42,8 +42,7 @@ export type MeasureElsewhere = (
 
 /** How a run of a deliverable ended. */
 export type MeasuringEnd =
-  | { kind: 'measured' | 'nothing-to-do' | 'handed-back' }
-  | { kind: 'unreadable'; reason: string };
+  { kind: 'measured' | 'nothing-to-do' | 'handed-back' } | { kind: 'unreadable'; reason: string };
 
 /** Trouble of the surroundings, or a death: the queue tries again, with growing pauses. */
 export class TryAgain extends Error {

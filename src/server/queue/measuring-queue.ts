@@ -24,7 +24,10 @@ let queue: Queue<MeasuringJob> | undefined;
 
 export function measuringQueue(): Queue<MeasuringJob> {
   if (!queue) {
-    queue = new Queue<MeasuringJob>(measuringQueueName, { connection: redis(), defaultJobOptions: jobOptions });
+    queue = new Queue<MeasuringJob>(measuringQueueName, {
+      connection: redis(),
+      defaultJobOptions: jobOptions,
+    });
     // The connection's own listener has warned of these already.
     queue.on('error', (error) => log.debug({ err: error.message }, 'measuring queue'));
   }
@@ -48,7 +51,10 @@ const within = <T>(milliseconds: number, work: Promise<T>): Promise<T> => {
  */
 export async function enqueueMeasuring(deliverableId: string): Promise<boolean> {
   try {
-    await within(3_000, measuringQueue().add('measure', { deliverableId }, { jobId: measuringJobId(deliverableId) }));
+    await within(
+      3_000,
+      measuringQueue().add('measure', { deliverableId }, { jobId: measuringJobId(deliverableId) }),
+    );
     return true;
   } catch (error) {
     log.warn({ err: error, deliverableId }, 'could not enqueue; the sweep will');

@@ -29,7 +29,8 @@ export function startMeasuringWorker(
     measuringQueueName,
     async (job, token) => {
       const parsed = measuringJobSchema.safeParse(job.data);
-      if (!parsed.success) throw new UnrecoverableError(`This job names no deliverable: ${parsed.error.message}`);
+      if (!parsed.success)
+        throw new UnrecoverableError(`This job names no deliverable: ${parsed.error.message}`);
       const end = await run(parsed.data.deliverableId, stop.signal);
       if (end.kind === 'unreadable') throw new UnrecoverableError(end.reason);
       if (end.kind === 'handed-back') {
@@ -49,7 +50,10 @@ export function startMeasuringWorker(
   );
   worker.on('failed', (job, error) => {
     const final = error instanceof UnrecoverableError;
-    log[final ? 'info' : 'warn']({ job: job?.id, attempt: job?.attemptsMade, err: error.message, final }, 'measuring ended without figures');
+    log[final ? 'info' : 'warn'](
+      { job: job?.id, attempt: job?.attemptsMade, err: error.message, final },
+      'measuring ended without figures',
+    );
   });
   worker.on('stalled', (jobId) => log.warn({ job: jobId }, 'a job lost its worker and is given to another'));
   worker.on('error', (error) => log.warn({ err: error.message }, 'measuring worker'));

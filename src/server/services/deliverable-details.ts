@@ -67,7 +67,10 @@ async function resolveNames(
       return refuse('bad_input', 'An episode needs its programme. Give the programme too.', {
         programmeTitle: 'Give the programme.',
       });
-    return done({ programmeId, episodeId: await findOrMakeEpisode(trx, scope, organisationId, programmeId, label) });
+    return done({
+      programmeId,
+      episodeId: await findOrMakeEpisode(trx, scope, organisationId, programmeId, label),
+    });
   }
   if (programmeId === programmeNow || !programmeId || !episodeNow) return done({ programmeId });
   const kept = await findEpisodeLabel(trx, scope, episodeNow);
@@ -88,15 +91,23 @@ async function chooseChannels(
   const added = wanted.filter((channelId) => !chosen.some((c) => c.channelId === channelId));
   const agreed = await listAgreedChannels(trx, scope, organisationId, added);
   if (agreed.length < added.length)
-    return refuse('bad_input', 'You have no agreement for one of these channels now. Choose among those in the list.', {
-      channelIds: 'One of these channels has no agreement with you.',
-    });
+    return refuse(
+      'bad_input',
+      'You have no agreement for one of these channels now. Choose among those in the list.',
+      {
+        channelIds: 'One of these channels has no agreement with you.',
+      },
+    );
   const dropped = chosen.filter((c) => !wanted.includes(c.channelId));
   const held = dropped.find((c) => c.hasSubmission);
   if (held)
-    return refuse('conflict', `It is submitted to ${held.channelName}, so that channel stays. Withdraw the submission first.`, {
-      channelIds: `Submitted to ${held.channelName}.`,
-    });
+    return refuse(
+      'conflict',
+      `It is submitted to ${held.channelName}, so that channel stays. Withdraw the submission first.`,
+      {
+        channelIds: `Submitted to ${held.channelName}.`,
+      },
+    );
   await removeChannels(
     trx,
     scope,

@@ -52,7 +52,10 @@ export async function openLiveStream(
       };
       const listening = listenToEvents(scope.organisationId, { onEvent: send, onGap: () => close() });
       const beat = setInterval(() => write(': beat\n\n'), times.beat);
-      const check = setInterval(() => void closeWhenSessionEnded(scope, standing, () => close()), times.sessionCheck);
+      const check = setInterval(
+        () => void closeWhenSessionEnded(scope, standing, () => close()),
+        times.sessionCheck,
+      );
       close = () => {
         if (!open) return;
         open = false;
@@ -71,9 +74,11 @@ export async function openLiveStream(
       if (leaves.aborted) return close();
       write(`retry: ${retryMilliseconds}\n\n`);
       // What happens between the look at the rows and the first event would be lost: listen first.
-      void listening.ready.then(() => sendStanding(scope, send)).catch((error: unknown) => {
-        log.warn({ err: error }, 'an event stream began without where things stand');
-      });
+      void listening.ready
+        .then(() => sendStanding(scope, send))
+        .catch((error: unknown) => {
+          log.warn({ err: error }, 'an event stream began without where things stand');
+        });
     },
     cancel: () => close(),
   });
@@ -84,7 +89,8 @@ async function sendStanding(scope: MemberScope, send: (event: LiveEvent) => void
   if (!mayDo(scope, needs.deliverable)) return;
   const rows = await listOnTheirWay(db(), scope);
   const progress = await readProgress(rows.map(({ id }) => id));
-  for (const { id, state } of rows) send({ kind: 'deliverable', id, state, progress: progress.get(id) ?? null });
+  for (const { id, state } of rows)
+    send({ kind: 'deliverable', id, state, progress: progress.get(id) ?? null });
 }
 
 async function closeWhenSessionEnded(scope: MemberScope, standing: string, close: () => void): Promise<void> {

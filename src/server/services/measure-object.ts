@@ -7,7 +7,14 @@ import type { MeasuringOutcome, MeasuringTask } from '../queue/measuring-contrac
 import type { Progress } from '../queue/progress.ts';
 import { HashingSource } from '../storage/hashing-source.ts';
 import type { ByteSource } from '../storage/piecewise-source.ts';
-import { headObject, ObjectMissing, objectSource, putObject, seriesKey, StorageTrouble } from '../storage/storage.ts';
+import {
+  headObject,
+  ObjectMissing,
+  objectSource,
+  putObject,
+  seriesKey,
+  StorageTrouble,
+} from '../storage/storage.ts';
 
 /** Named in the measurement's identity: another window, order, stream or decoder is another measurement. */
 const wholeFile = { window: null, audioChannels: 'all, in file order', stream: 0, decoder: 'by first bytes' };
@@ -61,7 +68,8 @@ export async function measureObject(
     const source = new HashingSource(watched);
     const read = await readAll(task, source, options);
     const sha256 = await source.sha256();
-    if (task.sha256Declared !== null && sha256 !== task.sha256Declared) return { kind: 'file', ...hashMismatch, sha256 };
+    if (task.sha256Declared !== null && sha256 !== task.sha256Declared)
+      return { kind: 'file', ...hashMismatch, sha256 };
     if (!read.ok) return { kind: 'file', code: read.code, message: read.message, sha256 };
     const key = seriesKey(task.organisationId, task.deliverableId, engineVersion, parametersHash);
     await putObject(key, encodeSeries(read.series));
@@ -89,7 +97,8 @@ async function readAll(
 ): Promise<({ ok: true } & Read) | { ok: false; code: string; message: string }> {
   try {
     const read = await measureSource(source, task.fileName, {
-      onProgress: (secondsDone: number, secondsTotal: number | null) => onProgress({ secondsDone, secondsTotal }),
+      onProgress: (secondsDone: number, secondsTotal: number | null) =>
+        onProgress({ secondsDone, secondsTotal }),
       signal,
     });
     return { ok: true, ...read };
@@ -105,6 +114,7 @@ function troubleOf(error: unknown, signal: AbortSignal): MeasuringOutcome {
   if (signal.aborted) return { kind: 'surroundings', message: 'stopped before the end' };
   if (error instanceof ObjectMissing) return { kind: 'file', ...missing, sha256: null };
   // 'syscall' marks the system's own errors: scratch space full, ffmpeg not there.
-  if (error instanceof StorageTrouble || (error instanceof Error && 'syscall' in error)) return { kind: 'surroundings', message };
+  if (error instanceof StorageTrouble || (error instanceof Error && 'syscall' in error))
+    return { kind: 'surroundings', message };
   return { kind: 'surprise', message };
 }

@@ -15,7 +15,12 @@ import {
 import { ensureWholeFilePresentation, insertMeasurement } from '../db/measurements-repository.ts';
 import { publishEvent } from '../events.ts';
 import { log } from '../log.ts';
-import { TryAgain, type MeasureElsewhere, type MeasuringEnd, type MeasuringOutcome } from '../queue/measuring-contract.ts';
+import {
+  TryAgain,
+  type MeasureElsewhere,
+  type MeasuringEnd,
+  type MeasuringOutcome,
+} from '../queue/measuring-contract.ts';
 import { clearProgress, setProgress, type Progress } from '../queue/progress.ts';
 import { redis } from '../redis.ts';
 import { systemScope } from '../scope.ts';
@@ -74,7 +79,11 @@ export async function measureDeliverable(
   }
 }
 
-async function writeEnd(deliverable: DeliverableCore, outcome: MeasuringOutcome, signal: AbortSignal): Promise<MeasuringEnd> {
+async function writeEnd(
+  deliverable: DeliverableCore,
+  outcome: MeasuringOutcome,
+  signal: AbortSignal,
+): Promise<MeasuringEnd> {
   const deliverableId = deliverable.id;
   if (outcome.kind === 'measured') return writeMeasured(deliverable, outcome);
   if (outcome.kind === 'file') return endUnreadable(deliverable, outcome, outcome.sha256);
@@ -155,5 +164,10 @@ async function tell(deliverable: DeliverableCore, state: string, progress: Progr
   } catch (error) {
     log.warn({ err: error, deliverableId: deliverable.id }, 'progress was not kept');
   }
-  await publishEvent(redis(), [deliverable.organisationId], { kind: 'deliverable', id: deliverable.id, state, progress });
+  await publishEvent(redis(), [deliverable.organisationId], {
+    kind: 'deliverable',
+    id: deliverable.id,
+    state,
+    progress,
+  });
 }

@@ -38,9 +38,12 @@ export async function sweep(now = new Date()): Promise<Swept> {
   return swept;
 }
 
-async function eachInState(state: 'waiting' | 'measuring', work: (id: string) => Promise<boolean>): Promise<number> {
+async function eachInState(
+  state: 'waiting' | 'measuring',
+  work: (id: string) => Promise<boolean>,
+): Promise<number> {
   let count = 0;
-  for (let after: string | null = null; ; ) {
+  for (let after: string | null = null; ;) {
     const ids = await listIdsInState(db(), scope, state, after, pageSize);
     for (const id of ids) if (await work(id)) count += 1;
     if (ids.length < pageSize) return count;

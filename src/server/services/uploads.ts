@@ -5,7 +5,13 @@ import type { createUploadsSchema, Upload } from '../../domain/api/deliverables.
 import { partSize, planUpload, whyNotUploadable } from '../../domain/upload-plan.ts';
 import { recordEvent } from '../db/audit-repository.ts';
 import { db, inTransaction } from '../db/connection.ts';
-import { findDeliverableCore, findSameContent, insertDeliverable, markArrived, markDiscarded } from '../db/deliverable-writes-repository.ts';
+import {
+  findDeliverableCore,
+  findSameContent,
+  insertDeliverable,
+  markArrived,
+  markDiscarded,
+} from '../db/deliverable-writes-repository.ts';
 import {
   deleteParts,
   endUpload,
@@ -92,11 +98,15 @@ export async function createUploads(
   const items: ItemResult<Upload>[] = [];
   for (let from = 0; from < files.length; from += createdAtOnce) {
     const answers = await Promise.all(
-      files.slice(from, from + createdAtOnce).map((file) => orStorageAway(() => createUpload(scope, file, taken))),
+      files
+        .slice(from, from + createdAtOnce)
+        .map((file) => orStorageAway(() => createUpload(scope, file, taken))),
     );
     answers.forEach((answer, i) => {
       const id = String(from + i);
-      items.push(answer.ok ? { ok: true, id, value: answer.value } : { ok: false, id, error: answer.refusal });
+      items.push(
+        answer.ok ? { ok: true, id, value: answer.value } : { ok: false, id, error: answer.refusal },
+      );
     });
   }
   return done({ items });
@@ -105,10 +115,13 @@ export async function createUploads(
 async function createUpload(scope: MemberScope, file: NewFile, taken: Set<string>): Promise<Answer<Upload>> {
   const why = whyNotUploadable(file.fileName, file.byteSize);
   if (why) return refuse('bad_input', why);
-  const broken = (await findSameFile(db(), scope, file)).find(({ deliverableId }) => !taken.has(deliverableId));
+  const broken = (await findSameFile(db(), scope, file)).find(
+    ({ deliverableId }) => !taken.has(deliverableId),
+  );
   if (broken) {
     taken.add(broken.deliverableId);
-    if ((await multipartStands(broken.storageKey, broken.storageUploadId)) !== 'gone') return done(toUpload(broken, true));
+    if ((await multipartStands(broken.storageKey, broken.storageUploadId)) !== 'gone')
+      return done(toUpload(broken, true));
     await giveUp(scope, broken);
   }
 
@@ -174,7 +187,12 @@ export async function signParts(
   const items = await Promise.all(
     numbers.map(async (number) => ({
       number,
-      url: await presignedPart(upload.storageKey, upload.storageUploadId, number, partSize(upload.byteSize, upload, number)),
+      url: await presignedPart(
+        upload.storageKey,
+        upload.storageUploadId,
+        number,
+        partSize(upload.byteSize, upload, number),
+      ),
     })),
   );
   return done({ items });
@@ -194,7 +212,10 @@ export async function recordPart(
     return refuse('bad_input', `Part ${part.number} was told; this file has ${upload.partCount}.`);
   const asked = partSize(upload.byteSize, upload, part.number);
   if (part.byteSize !== asked)
-    return refuse('bad_input', `Part ${part.number} has ${part.byteSize} bytes where ${asked} belong. Send it again.`);
+    return refuse(
+      'bad_input',
+      `Part ${part.number} has ${part.byteSize} bytes where ${asked} belong. Send it again.`,
+    );
   await upsertPart(db(), scope, upload, part);
   return done({ partsDone: [...new Set([...upload.partsDone, part.number])].sort((a, b) => a - b) });
 }
@@ -208,7 +229,11 @@ export interface Arrival {
  * Joins the parts, checks the size in storage, and hands the deliverable to measuring. Safe to repeat: a second call
  * after a lost answer gives the same. Refuses while parts are missing, and says which.
  */
-export function completeUpload(scope: Scope, deliverableId: string, sha256: string): Promise<Answer<Arrival>> {
+export function completeUpload(
+  scope: Scope,
+  deliverableId: string,
+  sha256: string,
+): Promise<Answer<Arrival>> {
   return orStorageAway(async () => {
     const found = await findOpen(scope, deliverableId);
     if (!found.ok) return found;
@@ -236,10 +261,18 @@ export function completeUpload(scope: Scope, deliverableId: string, sha256: stri
     if (!deliverable) return refuse('gone', 'This deliverable was discarded.');
     if (deliverable.state === 'waiting') {
       await enqueueMeasuring(deliverableId);
-      await publishEvent(redis(), [upload.organisationId], { kind: 'deliverable', id: deliverableId, state: 'waiting', progress: null });
+      await publishEvent(redis(), [upload.organisationId], {
+        kind: 'deliverable',
+        id: deliverableId,
+        state: 'waiting',
+        progress: null,
+      });
     }
     const same = await findSameContent(db(), upload.organisationId, sha256, deliverableId);
-    return done({ deliverableId, alreadyDelivered: same && { ...same, createdAt: same.createdAt.toISOString() } });
+    return done({
+      deliverableId,
+      alreadyDelivered: same && { ...same, createdAt: same.createdAt.toISOString() },
+    });
   });
 }
 
@@ -249,7 +282,10 @@ async function join(scope: Scope, upload: UploadRecord): Promise<Answer<null>> {
   const missing = missingParts(upload, parts);
   if (missing.length > 0) {
     const some = missing.slice(0, 5).join(', ') + (missing.length > 5 ? ', …' : '');
-    return refuse('conflict', `${missing.length} of ${upload.partCount} parts have not arrived (${some}). Send these and try again.`);
+    return refuse(
+      'conflict',
+      `${missing.length} of ${upload.partCount} parts have not arrived (${some}). Send these and try again.`,
+    );
   }
   let joined: 'done' | 'incomplete' | 'gone' | StorageTrouble;
   try {
@@ -264,7 +300,10 @@ async function join(scope: Scope, upload: UploadRecord): Promise<Answer<null>> {
   if (joined instanceof StorageTrouble && !head) throw joined;
   if (joined === 'incomplete') {
     await deleteParts(db(), scope, upload.deliverableId);
-    return refuse('conflict', 'Storage does not hold every part as it was sent. Pick the file again; all parts are sent anew.');
+    return refuse(
+      'conflict',
+      'Storage does not hold every part as it was sent. Pick the file again; all parts are sent anew.',
+    );
   }
   await giveUp(scope, upload);
   if (!head) return refuse('gone', 'Storage has forgotten this upload. Pick the file again to begin anew.');
@@ -276,17 +315,23 @@ async function join(scope: Scope, upload: UploadRecord): Promise<Answer<null>> {
 }
 
 function missingParts(upload: UploadRecord, parts: readonly PartRecord[]): number[] {
-  const whole = new Set(parts.filter((p) => p.byteSize === partSize(upload.byteSize, upload, p.number)).map((p) => p.number));
+  const whole = new Set(
+    parts.filter((p) => p.byteSize === partSize(upload.byteSize, upload, p.number)).map((p) => p.number),
+  );
   return Array.from({ length: upload.partCount }, (_, i) => i + 1).filter((number) => !whole.has(number));
 }
 
 /** Gives an upload up: its row ends, its deliverable is discarded, storage drops the parts. */
-export async function abortUpload(scope: Scope, deliverableId: string): Promise<Answer<{ deliverableId: string }>> {
+export async function abortUpload(
+  scope: Scope,
+  deliverableId: string,
+): Promise<Answer<{ deliverableId: string }>> {
   const no = lacking(scope, 'deliverable:upload');
   if (no) return no;
   const upload = await findUpload(db(), scope, deliverableId);
   if (!upload) return refuse('not_found', 'There is no such upload.');
-  if (upload.completedAt) return refuse('conflict', 'This file has arrived whole. Discard the deliverable instead.');
+  if (upload.completedAt)
+    return refuse('conflict', 'This file has arrived whole. Discard the deliverable instead.');
   if (!upload.abortedAt) await giveUp(scope, upload);
   return done({ deliverableId });
 }

@@ -23,7 +23,7 @@ export class PiecewiseSource implements ByteSource {
     const end = Math.min(this.size, offset + length);
     if (offset >= end) return new Uint8Array(0);
     const out = new Uint8Array(end - offset);
-    for (let at = offset; at < end; ) {
+    for (let at = offset; at < end;) {
       const index = Math.floor(at / pieceBytes);
       const from = at - index * pieceBytes;
       const piece = await this.#piece(index);

@@ -23,7 +23,10 @@ import { PiecewiseSource, type ByteSource } from './piecewise-source.ts';
 /** Storage is away or answers wrongly: trouble of the surroundings, worth another try. */
 export class StorageTrouble extends Error {
   constructor(doing: string, cause: unknown) {
-    super(`Storage failed while ${doing}: ${cause instanceof Error ? cause.message || cause.name : String(cause)}`, { cause });
+    super(
+      `Storage failed while ${doing}: ${cause instanceof Error ? cause.message || cause.name : String(cause)}`,
+      { cause },
+    );
     this.name = 'StorageTrouble';
   }
 }
@@ -61,14 +64,16 @@ const client = () => (inner ??= makeClient(config().S3_ENDPOINT));
 const publicClient = () => (outer ??= makeClient(config().S3_PUBLIC_ENDPOINT));
 const bucket = () => config().S3_BUCKET;
 
-const statusOf = (error: unknown) => (error instanceof S3ServiceException ? error.$metadata.httpStatusCode : undefined);
+const statusOf = (error: unknown) =>
+  error instanceof S3ServiceException ? error.$metadata.httpStatusCode : undefined;
 const nameOf = (error: unknown) => (error instanceof Error ? error.name : '');
 
 async function asking<T>(doing: string, ask: () => Promise<T>): Promise<T> {
   try {
     return await ask();
   } catch (error) {
-    if (error instanceof StorageTrouble || error instanceof ObjectMissing || nameOf(error) === 'AbortError') throw error;
+    if (error instanceof StorageTrouble || error instanceof ObjectMissing || nameOf(error) === 'AbortError')
+      throw error;
     throw new StorageTrouble(doing, error);
   }
 }
@@ -95,7 +100,11 @@ export async function createMultipart(key: string): Promise<string> {
   await ensureBucket();
   return asking('beginning an upload', async () => {
     const { UploadId } = await client().send(
-      new CreateMultipartUploadCommand({ Bucket: bucket(), Key: key, ContentType: 'application/octet-stream' }),
+      new CreateMultipartUploadCommand({
+        Bucket: bucket(),
+        Key: key,
+        ContentType: 'application/octet-stream',
+      }),
     );
     if (!UploadId) throw new Error('no upload id was given');
     return UploadId;
@@ -103,10 +112,21 @@ export async function createMultipart(key: string): Promise<string> {
 }
 
 /** The address to which a browser puts one part; valid for four hours, for exactly this many bytes. */
-export function presignedPart(key: string, uploadId: string, number: number, byteSize: number): Promise<string> {
+export function presignedPart(
+  key: string,
+  uploadId: string,
+  number: number,
+  byteSize: number,
+): Promise<string> {
   return getSignedUrl(
     publicClient(),
-    new UploadPartCommand({ Bucket: bucket(), Key: key, UploadId: uploadId, PartNumber: number, ContentLength: byteSize }),
+    new UploadPartCommand({
+      Bucket: bucket(),
+      Key: key,
+      UploadId: uploadId,
+      PartNumber: number,
+      ContentLength: byteSize,
+    }),
     { expiresIn: partUrlSeconds, signableHeaders: new Set(['content-length']) },
   );
 }
@@ -114,7 +134,9 @@ export function presignedPart(key: string, uploadId: string, number: number, byt
 /** Whether storage still knows a multipart upload; stores that cannot list parts answer 'unknown'. */
 export async function multipartStands(key: string, uploadId: string): Promise<'stands' | 'gone' | 'unknown'> {
   try {
-    await client().send(new ListPartsCommand({ Bucket: bucket(), Key: key, UploadId: uploadId, MaxParts: 1 }));
+    await client().send(
+      new ListPartsCommand({ Bucket: bucket(), Key: key, UploadId: uploadId, MaxParts: 1 }),
+    );
     return 'stands';
   } catch (error) {
     if (nameOf(error) === 'NoSuchUpload') return 'gone';
@@ -180,7 +202,8 @@ export function getRange(key: string, start: number, end: number, signal?: Abort
         { abortSignal: signal },
       );
       const bytes = await Body?.transformToByteArray();
-      if (bytes?.length !== end - start) throw new Error(`${bytes?.length ?? 0} bytes came of ${end - start}`);
+      if (bytes?.length !== end - start)
+        throw new Error(`${bytes?.length ?? 0} bytes came of ${end - start}`);
       return bytes;
     } catch (error) {
       if (nameOf(error) === 'NoSuchKey') throw new ObjectMissing(key);
@@ -208,23 +231,34 @@ export function getObject(key: string): Promise<Uint8Array> {
 }
 
 /** Writes a whole object of bytes, over any that stood under the key. */
-export async function putObject(key: string, bytes: Uint8Array, contentType = 'application/octet-stream'): Promise<void> {
+export async function putObject(
+  key: string,
+  bytes: Uint8Array,
+  contentType = 'application/octet-stream',
+): Promise<void> {
   await ensureBucket();
   await asking('writing an object', () =>
-    client().send(new PutObjectCommand({ Bucket: bucket(), Key: key, Body: bytes, ContentType: contentType })),
+    client().send(
+      new PutObjectCommand({ Bucket: bucket(), Key: key, Body: bytes, ContentType: contentType }),
+    ),
   );
 }
 
 /** Removes an object; nothing happens where there is none. */
 export async function deleteObject(key: string): Promise<void> {
-  await asking('removing an object', () => client().send(new DeleteObjectCommand({ Bucket: bucket(), Key: key })));
+  await asking('removing an object', () =>
+    client().send(new DeleteObjectCommand({ Bucket: bucket(), Key: key })),
+  );
 }
 
 /** The address from which a browser plays or saves an original, under its own name; valid for six hours. */
 export function presignedGet(key: string, fileName: string): Promise<string> {
   const type = contentTypeOf(fileName);
   const manner = type === 'application/octet-stream' ? 'attachment' : 'inline';
-  const named = encodeURIComponent(fileName).replace(/['()*]/g, (c) => `%${c.charCodeAt(0).toString(16).toUpperCase()}`);
+  const named = encodeURIComponent(fileName).replace(
+    /['()*]/g,
+    (c) => `%${c.charCodeAt(0).toString(16).toUpperCase()}`,
+  );
   return getSignedUrl(
     publicClient(),
     new GetObjectCommand({
@@ -244,7 +278,12 @@ export function closeStorage(): void {
   inner = outer = bucketSeen = undefined;
 }
 
-export const originalKey = (organisationId: string, deliverableId: string) => `originals/${organisationId}/${deliverableId}`;
+export const originalKey = (organisationId: string, deliverableId: string) =>
+  `originals/${organisationId}/${deliverableId}`;
 /** One series per deliverable, engine version and parameters, as measurements are unique by them. */
-export const seriesKey = (organisationId: string, deliverableId: string, engineVersion: string, parametersHash: string) =>
-  `series/${organisationId}/${deliverableId}/${engineVersion}-${parametersHash.slice(0, 16)}`;
+export const seriesKey = (
+  organisationId: string,
+  deliverableId: string,
+  engineVersion: string,
+  parametersHash: string,
+) => `series/${organisationId}/${deliverableId}/${engineVersion}-${parametersHash.slice(0, 16)}`;

@@ -67,7 +67,12 @@ describe('the event stream', () => {
     await setProgress(id, { secondsDone: 12.5, secondsTotal: 60 });
     const page = await browser(engineer);
     expect(await page.next()).toMatch(/^retry: \d+$/);
-    expect(await page.nextEvent()).toEqual({ kind: 'deliverable', id, state: 'waiting', progress: { secondsDone: 12.5, secondsTotal: 60 } });
+    expect(await page.nextEvent()).toEqual({
+      kind: 'deliverable',
+      id,
+      state: 'waiting',
+      progress: { secondsDone: 12.5, secondsTotal: 60 },
+    });
     await publishEvent(redis(), [engineer.organisationId], submission);
     expect(await page.nextEvent()).toEqual(submission);
     page.leave();
@@ -88,7 +93,12 @@ describe('the event stream', () => {
     const operator = await makePerson(['qc_operator']);
     const page = await browser(operator);
     await untilListening(operator.organisationId);
-    await publishEvent(redis(), [operator.organisationId], { kind: 'deliverable', id: randomUUID(), state: 'measured', progress: null });
+    await publishEvent(redis(), [operator.organisationId], {
+      kind: 'deliverable',
+      id: randomUUID(),
+      state: 'measured',
+      progress: null,
+    });
     await publishEvent(redis(), [operator.organisationId], submission);
     expect(await page.nextEvent()).toEqual(submission);
     page.leave();
@@ -114,10 +124,27 @@ describe('the event stream', () => {
   });
 
   it.each([
-    ['the session is revoked', (scope: MemberScope) => db()('sessions').where({ id: scope.sessionId }).update({ revoked_at: db().fn.now() })],
-    ['the membership ends', (scope: MemberScope) => db()('memberships').where({ user_id: scope.userId }).update({ removed_at: db().fn.now() })],
-    ['all sessions are ended', (scope: MemberScope) => db()('users').where({ id: scope.userId }).increment('session_version', 1)],
-    ['the roles change', (scope: MemberScope) => db()('membership_roles').where({ organisation_id: scope.organisationId }).update({ role: 'spec_owner' })],
+    [
+      'the session is revoked',
+      (scope: MemberScope) =>
+        db()('sessions').where({ id: scope.sessionId }).update({ revoked_at: db().fn.now() }),
+    ],
+    [
+      'the membership ends',
+      (scope: MemberScope) =>
+        db()('memberships').where({ user_id: scope.userId }).update({ removed_at: db().fn.now() }),
+    ],
+    [
+      'all sessions are ended',
+      (scope: MemberScope) => db()('users').where({ id: scope.userId }).increment('session_version', 1),
+    ],
+    [
+      'the roles change',
+      (scope: MemberScope) =>
+        db()('membership_roles')
+          .where({ organisation_id: scope.organisationId })
+          .update({ role: 'spec_owner' }),
+    ],
   ])('ends when %s', async (_what, change) => {
     const engineer = await makePerson();
     const page = await browser(engineer, { ...neverInTest, sessionCheck: 5 });
@@ -129,6 +156,9 @@ describe('the event stream', () => {
   it('is refused to a session that has ended', async () => {
     const engineer = await makePerson();
     await db()('sessions').where({ id: engineer.sessionId }).update({ revoked_at: db().fn.now() });
-    expect(await openLiveStream(engineer, new AbortController().signal)).toMatchObject({ ok: false, refusal: { code: 'unauthenticated' } });
+    expect(await openLiveStream(engineer, new AbortController().signal)).toMatchObject({
+      ok: false,
+      refusal: { code: 'unauthenticated' },
+    });
   });
 });

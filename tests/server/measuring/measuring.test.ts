@@ -42,12 +42,18 @@ describe('measuring a deliverable', () => {
     const sha256 = createHash('sha256').update(wave).digest('hex');
     expect(await row(id)).toMatchObject({ state: 'measured', sha256, reason: null });
     const [made] = await measurements(id);
-    expect(made).toMatchObject({ sha256, organisation_id: engineer.organisationId, format: { container: 'WAV', channels: 2 } });
+    expect(made).toMatchObject({
+      sha256,
+      organisation_id: engineer.organisationId,
+      format: { container: 'WAV', channels: 2 },
+    });
     expect(made.format.durationSeconds).toBeCloseTo(5, 6);
     // BS.1770: a 1 kHz stereo sine of -20 dBFS peak stands at -20.0 LUFS within 0.05 (997 Hz: -3.01 LUFS per channel at 0 dBFS).
     expect(made.figures.loudness.integratedLufs).toBeCloseTo(-20, 1);
     expect((await getObject(made.series_key)).length).toBeGreaterThan(0);
-    expect(await db()('audit_events').where({ subject_id: id }).pluck('action')).toEqual(['deliverable.measured']);
+    expect(await db()('audit_events').where({ subject_id: id }).pluck('action')).toEqual([
+      'deliverable.measured',
+    ]);
     expect(await redis().get(progressKey(id))).toBeNull();
   });
 
@@ -85,26 +91,39 @@ describe('measuring a deliverable', () => {
 describe('trouble of the file', () => {
   it('ends as unreadable when the bytes in storage are not those that were sent', async () => {
     const id = await arrivedFile(engineer, wave, { declared: 'a'.repeat(64) });
-    expect(await measure(id)).toMatchObject({ kind: 'unreadable', reason: expect.stringMatching(/SHA-256 differs.*Upload it again/) });
+    expect(await measure(id)).toMatchObject({
+      kind: 'unreadable',
+      reason: expect.stringMatching(/SHA-256 differs.*Upload it again/),
+    });
     expect(await row(id)).toMatchObject({ state: 'unreadable', reason_code: 'hash-mismatch' });
     expect(await measurements(id)).toHaveLength(0);
   });
 
   it('ends as unreadable, with a sentence, when it is no audio at all', async () => {
     const id = await arrivedFile(engineer, new TextEncoder().encode('This is a shopping list. '.repeat(40)));
-    expect(await measure(id)).toMatchObject({ kind: 'unreadable', reason: expect.stringMatching(/\w+.*\.$/) });
-    expect(await row(id)).toMatchObject({ state: 'unreadable', sha256: expect.stringMatching(/^[0-9a-f]{64}$/) });
+    expect(await measure(id)).toMatchObject({
+      kind: 'unreadable',
+      reason: expect.stringMatching(/\w+.*\.$/),
+    });
+    expect(await row(id)).toMatchObject({
+      state: 'unreadable',
+      sha256: expect.stringMatching(/^[0-9a-f]{64}$/),
+    });
   });
 
   it('says that the bytes changed rather than that they are no audio, when both are so', async () => {
-    const id = await arrivedFile(engineer, new TextEncoder().encode('no audio'), { declared: 'b'.repeat(64) });
+    const id = await arrivedFile(engineer, new TextEncoder().encode('no audio'), {
+      declared: 'b'.repeat(64),
+    });
     await measure(id);
     expect((await row(id)).reason_code).toBe('hash-mismatch');
   });
 
   it('ends as unreadable when storage has lost it', async () => {
     const id = await arrivedFile(engineer, wave);
-    await db()('deliverables').where({ id }).update({ storage_key: `gone/${id}` });
+    await db()('deliverables')
+      .where({ id })
+      .update({ storage_key: `gone/${id}` });
     expect(await measure(id)).toMatchObject({ kind: 'unreadable' });
     expect((await row(id)).reason_code).toBe('missing');
   });
@@ -114,7 +133,10 @@ describe('trouble of the file', () => {
     await expect(measure(id, dies)).rejects.toThrow('SIGSEGV');
     await expect(measure(id, dies)).rejects.toThrow('SIGSEGV');
     expect((await row(id)).state).toBe('measuring');
-    expect(await measure(id, dies)).toMatchObject({ kind: 'unreadable', reason: expect.stringMatching(/broke down 3 times/) });
+    expect(await measure(id, dies)).toMatchObject({
+      kind: 'unreadable',
+      reason: expect.stringMatching(/broke down 3 times/),
+    });
     expect(await row(id)).toMatchObject({ state: 'unreadable', reason_code: 'kills-worker' });
     expect(await measure(id)).toEqual({ kind: 'nothing-to-do' });
   });

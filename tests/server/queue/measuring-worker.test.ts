@@ -4,7 +4,13 @@ import { afterAll, afterEach, beforeAll, describe, expect, it } from 'vitest';
 import { QueueEvents } from 'bullmq';
 import { db } from '../../../src/server/db/connection.ts';
 import type { MeasureElsewhere, MeasuringEnd } from '../../../src/server/queue/measuring-contract.ts';
-import { enqueueMeasuring, hasLiveJob, measuringJobId, measuringQueue, measuringQueueName } from '../../../src/server/queue/measuring-queue.ts';
+import {
+  enqueueMeasuring,
+  hasLiveJob,
+  measuringJobId,
+  measuringQueue,
+  measuringQueueName,
+} from '../../../src/server/queue/measuring-queue.ts';
 import { startMeasuringWorker, type MeasuringWorker } from '../../../src/server/queue/measuring-worker.ts';
 import { blockingRedis } from '../../../src/server/redis.ts';
 import type { MemberScope } from '../../../src/server/scope.ts';
@@ -38,7 +44,11 @@ const work = (run: (id: string, signal: AbortSignal) => Promise<MeasuringEnd>) =
 };
 const row = (id: string) => db()('deliverables').where({ id }).first();
 const retriedImpatiently = (id: string) =>
-  measuringQueue().add('measure', { deliverableId: id }, { jobId: measuringJobId(id), attempts: 4, backoff: { type: 'fixed', delay: 10 } });
+  measuringQueue().add(
+    'measure',
+    { deliverableId: id },
+    { jobId: measuringJobId(id), attempts: 4, backoff: { type: 'fixed', delay: 10 } },
+  );
 
 describe("the queue's worker", () => {
   it('hands a running measurement back when it has to leave, and the next worker takes it', async () => {
@@ -58,7 +68,9 @@ describe("the queue's worker", () => {
     expect(await row(id)).toMatchObject({ state: 'waiting', measure_attempts: 0 });
     expect(await hasLiveJob(id)).toBe(true);
 
-    const taken = new Promise<string>((resolve) => work(async (deliverableId) => (resolve(deliverableId), { kind: 'measured' })));
+    const taken = new Promise<string>((resolve) =>
+      work(async (deliverableId) => (resolve(deliverableId), { kind: 'measured' })),
+    );
     expect(await taken).toBe(id);
   });
 
@@ -96,7 +108,11 @@ describe("the queue's worker", () => {
       return { kind: 'measured' };
     });
     const failed = once(told, 'failed');
-    await measuringQueue().add('measure', { deliverableId: '../../etc' }, { jobId: 'measure-odd', attempts: 4 });
+    await measuringQueue().add(
+      'measure',
+      { deliverableId: '../../etc' },
+      { jobId: 'measure-odd', attempts: 4 },
+    );
     expect((await failed)[0].failedReason).toMatch(/names no deliverable/);
     expect(runs).toBe(0);
   });

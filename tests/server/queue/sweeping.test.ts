@@ -1,7 +1,12 @@
 import { randomUUID } from 'node:crypto';
 import { afterAll, beforeAll, beforeEach, describe, expect, it } from 'vitest';
 import { db } from '../../../src/server/db/connection.ts';
-import { enqueueMeasuring, hasLiveJob, measuringJobId, measuringQueue } from '../../../src/server/queue/measuring-queue.ts';
+import {
+  enqueueMeasuring,
+  hasLiveJob,
+  measuringJobId,
+  measuringQueue,
+} from '../../../src/server/queue/measuring-queue.ts';
 import { redis } from '../../../src/server/redis.ts';
 import type { MemberScope } from '../../../src/server/scope.ts';
 import { sweep } from '../../../src/server/services/sweeping.ts';
@@ -87,7 +92,9 @@ describe('the sweep', () => {
     ]);
     if (!begun.ok || !begun.value.items[0].ok || !begun.value.items[1].ok) throw new Error('no uploads');
     const [old, young] = [begun.value.items[0].value.deliverableId, begun.value.items[1].value.deliverableId];
-    await db()('uploads').where({ deliverable_id: old }).update({ created_at: db().raw(`now() - interval '7 days 1 minute'`) });
+    await db()('uploads')
+      .where({ deliverable_id: old })
+      .update({ created_at: db().raw(`now() - interval '7 days 1 minute'`) });
     expect(await sweep()).toMatchObject({ uploadsEnded: 1 });
     const open = await listUploads(engineer);
     expect(open.ok && open.value.items.map((item) => item.deliverableId)).toEqual([young]);

@@ -49,7 +49,9 @@ describe('the store', () => {
   });
 
   it('calls it trouble when an object has grown shorter than it was said to be', async () => {
-    await expect(objectSource('a/b', bytes.length + 5).read(0, 200_000)).rejects.toBeInstanceOf(StorageTrouble);
+    await expect(objectSource('a/b', bytes.length + 5).read(0, 200_000)).rejects.toBeInstanceOf(
+      StorageTrouble,
+    );
   });
 
   it('takes a store that refuses to drop or to list an upload as it is', async () => {
@@ -64,7 +66,9 @@ describe('the store', () => {
     const wav = await fetch(await presignedGet('e/f', 'Small Gales "2.11" ü.wav'));
     expect(wav.status).toBe(200);
     expect(wav.headers.get('content-type')).toBe('audio/wav');
-    expect(wav.headers.get('content-disposition')).toBe("inline; filename*=UTF-8''Small%20Gales%20%222.11%22%20%C3%BC.wav");
+    expect(wav.headers.get('content-disposition')).toBe(
+      "inline; filename*=UTF-8''Small%20Gales%20%222.11%22%20%C3%BC.wav",
+    );
     const page = await fetch(await presignedGet('e/f', 'evil.html'));
     expect(page.headers.get('content-type')).toBe('application/octet-stream');
     expect(page.headers.get('content-disposition')).toMatch(/^attachment/);

@@ -1,7 +1,11 @@
 import { createHash, randomBytes } from 'node:crypto';
 import { S3Client, UploadPartCommand } from '@aws-sdk/client-s3';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
-import { createUploadsResultSchema, uploadListSchema, type Upload } from '../../../src/domain/api/deliverables.ts';
+import {
+  createUploadsResultSchema,
+  uploadListSchema,
+  type Upload,
+} from '../../../src/domain/api/deliverables.ts';
 import { partSize } from '../../../src/domain/upload-plan.ts';
 import { db } from '../../../src/server/db/connection.ts';
 import { hasLiveJob } from '../../../src/server/queue/measuring-queue.ts';
@@ -62,13 +66,21 @@ async function send(scope: MemberScope, upload: Upload, number: number, of = byt
   const part = of.subarray((number - 1) * upload.partBytes, (number - 1) * upload.partBytes + size);
   const put = await fetch(items[0].url, { method: 'PUT', body: new Uint8Array(part) });
   expect(put.status).toBe(200);
-  value(await recordPart(scope, upload.deliverableId, { number, etag: put.headers.get('etag') ?? '', byteSize: size }));
+  value(
+    await recordPart(scope, upload.deliverableId, {
+      number,
+      etag: put.headers.get('etag') ?? '',
+      byteSize: size,
+    }),
+  );
 }
 
 async function deliver(scope: MemberScope, given = file(), of = bytes) {
   const upload = await begin(scope, given);
   for (let number = 1; number <= upload.partCount; number++) await send(scope, upload, number, of);
-  return value(await completeUpload(scope, upload.deliverableId, createHash('sha256').update(of).digest('hex')));
+  return value(
+    await completeUpload(scope, upload.deliverableId, createHash('sha256').update(of).digest('hex')),
+  );
 }
 /** A client that keeps to nobody's signature. */
 const strayClient = () =>
@@ -90,14 +102,27 @@ describe('uploading', () => {
     expect(arrival).toEqual({ deliverableId: upload.deliverableId, alreadyDelivered: null });
     const stored = await row(upload.deliverableId);
     expect(stored).toMatchObject({ state: 'waiting', sha256_declared: sha256, uploaded_by: engineer.userId });
-    expect(createHash('sha256').update(await getObject(stored.storage_key)).digest('hex')).toBe(sha256);
+    expect(
+      createHash('sha256')
+        .update(await getObject(stored.storage_key))
+        .digest('hex'),
+    ).toBe(sha256);
     expect(await hasLiveJob(upload.deliverableId)).toBe(true);
-    expect(await db()('audit_events').where({ subject_id: upload.deliverableId }).pluck('action')).toEqual(['deliverable.uploaded']);
+    expect(await db()('audit_events').where({ subject_id: upload.deliverableId }).pluck('action')).toEqual([
+      'deliverable.uploaded',
+    ]);
   });
 
   it('answers each file of a request by itself, and says why one is not taken', async () => {
     const { items } = createUploadsResultSchema.parse(
-      value(await createUploads(engineer, [file({ byteSize: 0 }), file(), file({ fileName: '.hidden' }), file({ byteSize: 65 * 1024 ** 3 })])),
+      value(
+        await createUploads(engineer, [
+          file({ byteSize: 0 }),
+          file(),
+          file({ fileName: '.hidden' }),
+          file({ byteSize: 65 * 1024 ** 3 }),
+        ]),
+      ),
     );
     expect(items.map((item) => item.ok)).toEqual([false, true, false, false]);
     expect(items.map((item) => item.id)).toEqual(['0', '1', '2', '3']);
@@ -132,7 +157,10 @@ describe('uploading', () => {
 
   it('gives two files of one request that look the same an upload each, and resumes both', async () => {
     const twin = file();
-    const ids = async () => value(await createUploads(engineer, [twin, twin])).items.map((item) => item.ok && item.value.deliverableId);
+    const ids = async () =>
+      value(await createUploads(engineer, [twin, twin])).items.map(
+        (item) => item.ok && item.value.deliverableId,
+      );
     const first = await ids();
     expect(new Set(first).size).toBe(2);
     expect((await ids()).sort()).toEqual(first.sort());
@@ -165,15 +193,22 @@ describe('uploading', () => {
     const upload = await begin(engineer, file());
     await send(engineer, upload, 2);
     const answer = await completeUpload(engineer, upload.deliverableId, sha256);
-    expect(answer).toMatchObject({ ok: false, refusal: { code: 'conflict', message: expect.stringMatching(/2 of 3 parts .*\(1, 3\)/) } });
+    expect(answer).toMatchObject({
+      ok: false,
+      refusal: { code: 'conflict', message: expect.stringMatching(/2 of 3 parts .*\(1, 3\)/) },
+    });
     expect((await row(upload.deliverableId)).state).toBe('uploading');
   });
 
   it('refuses a part of the wrong size or beyond the last', async () => {
     const upload = await begin(engineer, file());
     const id = upload.deliverableId;
-    expect(codeOf(await recordPart(engineer, id, { number: 1, etag: '"x"', byteSize: 999 }))).toBe('bad_input');
-    expect(codeOf(await recordPart(engineer, id, { number: 4, etag: '"x"', byteSize: 1000 }))).toBe('bad_input');
+    expect(codeOf(await recordPart(engineer, id, { number: 1, etag: '"x"', byteSize: 999 }))).toBe(
+      'bad_input',
+    );
+    expect(codeOf(await recordPart(engineer, id, { number: 4, etag: '"x"', byteSize: 1000 }))).toBe(
+      'bad_input',
+    );
     expect(codeOf(await signParts(engineer, id, [1, 4]))).toBe('bad_input');
   });
 
@@ -182,22 +217,34 @@ describe('uploading', () => {
   it('signs the length of each part, so that storage refuses another', async () => {
     const upload = await begin(engineer, file());
     const { items } = value(await signParts(engineer, upload.deliverableId, [1, 3]));
-    for (const { url } of items) expect(new URL(url).searchParams.get('X-Amz-SignedHeaders')?.split(';')).toContain('content-length');
+    for (const { url } of items)
+      expect(new URL(url).searchParams.get('X-Amz-SignedHeaders')?.split(';')).toContain('content-length');
     expect(new URL(items[0].url).origin).toBe(process.env.S3_PUBLIC_ENDPOINT);
   });
 
   it('refuses when fewer bytes lie in storage than the file has, keeps none of them, and takes the file anew', async () => {
     const same = file({ byteSize: 500 });
     const upload = await begin(engineer, same);
-    const { storage_upload_id: UploadId } = await db()('uploads').where({ deliverable_id: upload.deliverableId }).first();
+    const { storage_upload_id: UploadId } = await db()('uploads')
+      .where({ deliverable_id: upload.deliverableId })
+      .first();
     const { storage_key: Key } = await row(upload.deliverableId);
     const { ETag: etag = '' } = await strayClient().send(
-      new UploadPartCommand({ Bucket: world.environment.S3_BUCKET, Key, UploadId, PartNumber: 1, Body: new Uint8Array(400) }),
+      new UploadPartCommand({
+        Bucket: world.environment.S3_BUCKET,
+        Key,
+        UploadId,
+        PartNumber: 1,
+        Body: new Uint8Array(400),
+      }),
     );
     value(await recordPart(engineer, upload.deliverableId, { number: 1, etag, byteSize: 500 }));
     expect(await completeUpload(engineer, upload.deliverableId, sha256)).toMatchObject({
       ok: false,
-      refusal: { code: 'conflict', message: expect.stringMatching(/400 bytes arrived where the file has 500/) },
+      refusal: {
+        code: 'conflict',
+        message: expect.stringMatching(/400 bytes arrived where the file has 500/),
+      },
     });
     expect((await row(upload.deliverableId)).discarded_at).not.toBeNull();
     expect(await headObject(Key)).toBeNull();
@@ -207,10 +254,14 @@ describe('uploading', () => {
   it('completes once, however often and at once it is asked', async () => {
     const upload = await begin(engineer, file());
     for (const number of [1, 2, 3]) await send(engineer, upload, number);
-    const answers = await Promise.all([1, 2, 3].map(() => completeUpload(engineer, upload.deliverableId, sha256)));
+    const answers = await Promise.all(
+      [1, 2, 3].map(() => completeUpload(engineer, upload.deliverableId, sha256)),
+    );
     answers.push(await completeUpload(engineer, upload.deliverableId, sha256));
     expect(answers.map(codeOf)).toEqual(['ok', 'ok', 'ok', 'ok']);
-    expect(await db()('audit_events').where({ subject_id: upload.deliverableId, action: 'deliverable.uploaded' })).toHaveLength(1);
+    expect(
+      await db()('audit_events').where({ subject_id: upload.deliverableId, action: 'deliverable.uploaded' }),
+    ).toHaveLength(1);
   });
 
   it('gives an upload up: the deliverable is discarded, and nothing more is signed', async () => {
@@ -239,7 +290,9 @@ describe('who may upload', () => {
       abortUpload(colleagueOfAnother, deliverableId),
     ];
     expect((await Promise.all<Answer<unknown>>(asStranger)).map(codeOf)).toEqual(Array(4).fill('not_found'));
-    expect(value(await listUploads(colleagueOfAnother)).items.map((item) => item.deliverableId)).not.toContain(deliverableId);
+    expect(
+      value(await listUploads(colleagueOfAnother)).items.map((item) => item.deliverableId),
+    ).not.toContain(deliverableId);
   });
 
   it('refuses whoever is no mix engineer of a supplier', async () => {
@@ -260,9 +313,17 @@ describe('who may upload', () => {
 
 describe('details of a deliverable', () => {
   it('makes programme and episode where they are new, and finds them in any case of letters', async () => {
-    const details = { programmeTitle: 'The Tallow Road', episodeLabel: '1.04', versionLabel: 'v2', contentKind: 'trailer' as const };
+    const details = {
+      programmeTitle: 'The Tallow Road',
+      episodeLabel: '1.04',
+      versionLabel: 'v2',
+      contentKind: 'trailer' as const,
+    };
     const first = await begin(engineer, file({ details }));
-    const second = await begin(engineer, file({ details: { programmeTitle: 'the tallow road', episodeLabel: '1.04' } }));
+    const second = await begin(
+      engineer,
+      file({ details: { programmeTitle: 'the tallow road', episodeLabel: '1.04' } }),
+    );
     const [a, b] = [await row(first.deliverableId), await row(second.deliverableId)];
     expect(a).toMatchObject({ version_label: 'v2', content_kind: 'trailer' });
     expect(a.programme_id).not.toBeNull();
@@ -273,9 +334,16 @@ describe('details of a deliverable', () => {
     const agreed = await makeAgreedChannel(distributor, engineer);
     const foreign = await makeAgreedChannel(distributor, colleagueOfAnother);
     const upload = await begin(engineer, file({ details: { channelIds: [agreed] } }));
-    expect(await db()('deliverable_channels').where({ deliverable_id: upload.deliverableId }).pluck('channel_id')).toEqual([agreed]);
-    const { items } = value(await createUploads(engineer, [file({ details: { channelIds: [agreed, foreign] } })]));
-    expect(items[0]).toMatchObject({ ok: false, error: { code: 'bad_input', fields: { channelIds: expect.any(String) } } });
+    expect(
+      await db()('deliverable_channels').where({ deliverable_id: upload.deliverableId }).pluck('channel_id'),
+    ).toEqual([agreed]);
+    const { items } = value(
+      await createUploads(engineer, [file({ details: { channelIds: [agreed, foreign] } })]),
+    );
+    expect(items[0]).toMatchObject({
+      ok: false,
+      error: { code: 'bad_input', fields: { channelIds: expect.any(String) } },
+    });
   });
 
   it('refuses an episode without its programme, and leaves no upload behind', async () => {

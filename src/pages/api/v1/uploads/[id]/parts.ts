@@ -9,4 +9,6 @@ export const POST = endpoint(async (context, scope) => {
 });
 
 /** Tells that storage took a part. */
-export const PUT = endpoint(async (context, scope) => recordPart(scope, idParam(context), await body(context, recordPartSchema)));
+export const PUT = endpoint(async (context, scope) =>
+  recordPart(scope, idParam(context), await body(context, recordPartSchema)),
+);
