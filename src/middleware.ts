@@ -42,7 +42,7 @@ function mayPass(scope: MemberScope | null, need: Need | undefined): boolean {
 
 function secured(response: Response): Response {
   response.headers.set('x-content-type-options', 'nosniff');
-  response.headers.set('referrer-policy', 'same-origin');
+  if (!response.headers.has('referrer-policy')) response.headers.set('referrer-policy', 'same-origin');
   response.headers.set('x-frame-options', 'DENY');
   if (
     !response.headers.has('cache-control') &&

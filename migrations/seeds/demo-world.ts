@@ -2,8 +2,7 @@
 import type { SpecBody } from '../../src/domain/spec.ts';
 import type { ChannelKind, ContentKind, Role } from '../../src/domain/vocabulary.ts';
 
-/** One password for every demo person; the local start prints it. */
-export const demoPassword = 'load-line-demo';
+export { demoPassword, demoSignIns } from '../../src/server/auth/demo-sign-ins.ts';
 
 interface DemoOrganisation {
   slug: string;
@@ -56,14 +55,6 @@ export const organisations: DemoOrganisation[] = [
     people: [{ email: 'mix@fennellane.example', name: 'Tamsin Vayle', roles: ['mix_engineer', 'administrator'] }],
   },
 ];
-
-/** Who signs in as what in the printed list and on the demo's sign-in page. */
-export const demoSignIns = [
-  { email: 'mix@copperkettle.example', label: 'Mix engineer, Copper Kettle Post' },
-  { email: 'qc@harrowsound.example', label: 'QC operator, Harrow Sound Television' },
-  { email: 'specs@harrowsound.example', label: 'Spec owner, Harrow Sound Television' },
-  { email: 'admin@harrowsound.example', label: 'Administrator, Harrow Sound Television' },
-] as const;
 
 const r128 = { document: 'EBU R 128', edition: 'V5, November 2023', note: "Tolerance is the channel's own. Check against the receiving party's own document." };
 const file = (layouts: string[]): SpecBody['rules'] => [

@@ -10,7 +10,10 @@ export const permissions = {
   'submission:create': { roles: ['mix_engineer'], side: 'supplier' },
   'submission:withdraw': { roles: ['mix_engineer'], side: 'supplier' },
   /** Both sides read a submission; only the distributor's list is the review queue. */
-  'submission:read': { roles: ['mix_engineer', 'qc_operator', 'spec_owner', 'administrator'], side: 'either' },
+  'submission:read': {
+    roles: ['mix_engineer', 'qc_operator', 'spec_owner', 'administrator'],
+    side: 'either',
+  },
   'submission:decide': { roles: ['qc_operator'], side: 'distributor' },
   'note:write': { roles: ['mix_engineer', 'qc_operator'], side: 'either' },
   'spec:read': { roles: ['mix_engineer', 'qc_operator', 'spec_owner', 'administrator'], side: 'either' },
@@ -37,6 +40,13 @@ export function allows(who: Standing, permission: Permission): boolean {
   return rightSide && roles.some((role) => (who.roles as readonly string[]).includes(role));
 }
 
+/** Where somebody's work begins. */
+export function landingPath(who: Standing): string {
+  if (allows(who, 'deliverable:read')) return '/deliverables';
+  if (allows(who, 'spec:edit') && !allows(who, 'submission:decide')) return '/specs';
+  return '/review';
+}
+
 /** What a route asks of its caller: nothing, to be signed in, or a permission. */
 export type Need = 'anyone' | 'signed-in' | Permission;
 type Method = 'GET' | 'POST' | 'PUT' | 'PATCH' | 'DELETE';
@@ -46,6 +56,7 @@ export const routes: Record<string, Partial<Record<Method, Need>>> = {
   // Pages
   '/': { GET: 'anyone' },
   '/sign-in': { GET: 'anyone', POST: 'anyone' },
+  '/sign-out': { POST: 'anyone' },
   '/forgot-password': { GET: 'anyone', POST: 'anyone' },
   '/reset-password/[token]': { GET: 'anyone', POST: 'anyone' },
   '/invitation/[token]': { GET: 'anyone', POST: 'anyone' },
@@ -61,6 +72,7 @@ export const routes: Record<string, Partial<Record<Method, Need>>> = {
   '/channels/[id]': { GET: 'channel:read' },
   '/members': { GET: 'member:read' },
   '/activity': { GET: 'activity:read' },
+  '/403': { GET: 'anyone' },
   '/404': { GET: 'anyone' },
   '/500': { GET: 'anyone' },
   // Sign-in

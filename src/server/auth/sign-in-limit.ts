@@ -2,9 +2,12 @@
 import type { Redis } from 'ioredis';
 import { RateLimiterMemory, RateLimiterRedis, RateLimiterRes } from 'rate-limiter-flexible';
 
-export interface SignInLimit {
-  /** Takes one try. `null`: go on; else the seconds to wait. Taken before the password is looked at, so that tries at once count. */
+export interface TryLimit {
+  /** Takes one try. `null`: go on; else the seconds to wait. */
   take(email: string, address: string): Promise<number | null>;
+}
+
+export interface SignInLimit extends TryLimit {
   /** Gives the try back after a right password; earlier failures of that e-mail are forgotten. */
   giveBack(email: string, address: string): Promise<void>;
 }
@@ -46,6 +49,17 @@ export function signInLimit(redis: Redis): SignInLimit {
     async giveBack(email, address) {
       await byEmail.delete(email);
       await byAddress.reward(address);
+    },
+  };
+}
+
+/** How often a new password may be asked for: a mailbox must not be filled by strangers. */
+export function resetLimit(redis: Redis): TryLimit {
+  const byEmail = limiter(redis, 'reset:email', 5);
+  const byAddress = limiter(redis, 'reset:address', 30);
+  return {
+    async take(email, address) {
+      return (await consume(byAddress, address)) ?? (await consume(byEmail, email));
     },
   };
 }
