@@ -38,3 +38,5 @@ process.on('message', (raw) => {
     tell({ kind: 'outcome', outcome });
   });
 });
+
+tell({ kind: 'ready' });

@@ -13,7 +13,7 @@ import {
 } from './measuring-contract.ts';
 
 /** Neither progress nor a read for this long: it hangs. */
-const silenceMilliseconds = 5 * 60_000;
+const longestSilenceMilliseconds = 5 * 60_000;
 /** Heap of a child, MiB; audio buffers lie outside of it. */
 const heapMebibytes = 1024;
 
@@ -23,8 +23,15 @@ export interface MeasuringChildren {
   close(): void;
 }
 
-/** `childFile` is the entry point that measures; it is run by the same Node with the same flags. */
-export function measuringChildren(childFile: URL): MeasuringChildren {
+/**
+ * `childFile` is the entry point that measures; it is run by the same Node with the same flags. A child that ends before
+ * it has loaded is trouble of the surroundings (a broken build), one that ends later died of its file.
+ */
+export function measuringChildren(
+  childFile: URL,
+  { silenceMilliseconds = longestSilenceMilliseconds } = {},
+): MeasuringChildren {
+  const loaded = new WeakSet<ChildProcess>();
   const idle: ChildProcess[] = [];
   let closed = false;
 
@@ -38,17 +45,20 @@ export function measuringChildren(childFile: URL): MeasuringChildren {
     new Promise<MeasuringOutcome>((resolve, reject) => {
       if (signal.aborted) return resolve({ kind: 'surroundings', message: 'stopped before it began' });
       const child = idle.pop() ?? start();
+      child.removeAllListeners('error');
       let silence: NodeJS.Timeout | undefined;
       const end = (how: () => void) => {
         clearTimeout(silence);
         signal.removeEventListener('abort', onAbort);
-        child.removeAllListeners();
+        for (const event of ['message', 'error', 'exit']) child.removeAllListeners(event);
+        child.on('error', (error) => log.warn({ err: error }, 'a measuring child that nobody waits for failed'));
         how();
       };
       const die = (why: string) =>
         end(() => {
           child.kill('SIGKILL');
-          reject(new Error(why));
+          if (loaded.has(child)) reject(new Error(why));
+          else resolve({ kind: 'surroundings', message: `a measuring process did not start: ${why}` });
         });
       const onAbort = () =>
         end(() => {
@@ -57,14 +67,17 @@ export function measuringChildren(childFile: URL): MeasuringChildren {
         });
       const heard = () => {
         clearTimeout(silence);
-        silence = setTimeout(() => die('gave no sign of life for five minutes'), silenceMilliseconds);
+        // What has not loaded yet has no file to hang on.
+        const most = loaded.has(child) ? silenceMilliseconds : longestSilenceMilliseconds;
+        silence = setTimeout(() => die(`gave no sign of life for ${most / 1000} s`), most);
       };
 
       child.on('message', (raw) => {
         const parsed = fromChildSchema.safeParse(raw);
         if (!parsed.success) return die(`said what nobody understands: ${parsed.error.message}`);
-        heard();
         const message = parsed.data;
+        if (message.kind === 'ready') loaded.add(child);
+        heard();
         if (message.kind === 'progress') onProgress(message.progress);
         if (message.kind === 'outcome')
           end(() => {
@@ -73,9 +86,7 @@ export function measuringChildren(childFile: URL): MeasuringChildren {
           });
       });
       child.on('error', (error) => die(error.message));
-      child.on('exit', (code, killedBy) =>
-        end(() => reject(new Error(`ended with ${killedBy ?? `status ${code}`}`))),
-      );
+      child.on('exit', (code, killedBy) => die(`ended with ${killedBy ?? `status ${code}`}`));
       signal.addEventListener('abort', onAbort);
       heard();
       const order: ToChild = { kind: 'measure', task };
@@ -90,7 +101,6 @@ export function measuringChildren(childFile: URL): MeasuringChildren {
       const at = idle.indexOf(child);
       if (at >= 0) idle.splice(at, 1);
     });
-    child.on('error', (error) => log.warn({ err: error }, 'a waiting measuring child failed'));
     idle.push(child);
   }
 

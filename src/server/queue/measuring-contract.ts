@@ -53,8 +53,9 @@ export class TryAgain extends Error {
 export const toChildSchema = z.object({ kind: z.literal('measure'), task: measuringTaskSchema });
 export type ToChild = z.infer<typeof toChildSchema>;
 
-/** From the child to its worker; 'alive' while bytes are read and there is no progress to tell. */
+/** From the child to its worker: 'ready' once, when it has loaded; 'alive' while bytes are read and there is no progress to tell. */
 export const fromChildSchema = z.discriminatedUnion('kind', [
+  z.object({ kind: z.literal('ready') }),
   z.object({ kind: z.literal('progress'), progress: progressSchema }),
   z.object({ kind: z.literal('alive') }),
   z.object({ kind: z.literal('outcome'), outcome: measuringOutcomeSchema }),
