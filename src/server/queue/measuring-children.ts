@@ -51,7 +51,9 @@ export function measuringChildren(
         clearTimeout(silence);
         signal.removeEventListener('abort', onAbort);
         for (const event of ['message', 'error', 'exit']) child.removeAllListeners(event);
-        child.on('error', (error) => log.warn({ err: error }, 'a measuring child that nobody waits for failed'));
+        child.on('error', (error) =>
+          log.warn({ err: error }, 'a measuring child that nobody waits for failed'),
+        );
         how();
       };
       const die = (why: string) =>
