@@ -1,7 +1,11 @@
 /** Uploads: begun, signed part by part, joined, given up. Bytes go from the browser to storage and never pass here. */
 import { randomUUID } from 'node:crypto';
 import type { z } from 'zod';
-import type { createUploadsSchema, Upload } from '../../domain/api/deliverables.ts';
+import type {
+  completeUploadResultSchema,
+  createUploadsSchema,
+  Upload,
+} from '../../domain/api/deliverables.ts';
 import { partSize, planUpload, whyNotUploadable } from '../../domain/upload-plan.ts';
 import { recordEvent } from '../db/audit-repository.ts';
 import { db, inTransaction } from '../db/connection.ts';
@@ -28,7 +32,7 @@ import { publishEvent } from '../events.ts';
 import { log } from '../log.ts';
 import { enqueueMeasuring } from '../queue/measuring-queue.ts';
 import { redis } from '../redis.ts';
-import { done, lacking, refuse, type Answer, type Refusal } from '../refusals.ts';
+import { done, lacking, refuse, type Answer } from '../refusals.ts';
 import type { MemberScope, Scope } from '../scope.ts';
 import {
   abortMultipart,
@@ -42,9 +46,10 @@ import {
   StorageTrouble,
 } from '../storage/storage.ts';
 import { setDeliverableDetails } from './deliverable-details.ts';
+import { readDeliverableRow, type ItemResult } from './deliverables.ts';
 
 export type NewFile = z.infer<typeof createUploadsSchema>['files'][number];
-type ItemResult<T> = { ok: true; id: string; value: T } | { ok: false; id: string; error: Refusal };
+export type Arrival = z.infer<typeof completeUploadResultSchema>;
 
 const createdAtOnce = 8;
 const storageAway = refuse(
@@ -220,11 +225,6 @@ export async function recordPart(
   return done({ partsDone: [...new Set([...upload.partsDone, part.number])].sort((a, b) => a - b) });
 }
 
-export interface Arrival {
-  deliverableId: string;
-  alreadyDelivered: { id: string; fileName: string; createdAt: string } | null;
-}
-
 /**
  * Joins the parts, checks the size in storage, and hands the deliverable to measuring. Safe to repeat: a second call
  * after a lost answer gives the same. Refuses while parts are missing, and says which.
@@ -268,9 +268,11 @@ export function completeUpload(
         progress: null,
       });
     }
+    const row = await readDeliverableRow(scope, deliverableId);
+    if (!row.ok) return row;
     const same = await findSameContent(db(), upload.organisationId, sha256, deliverableId);
     return done({
-      deliverableId,
+      deliverable: row.value,
       alreadyDelivered: same && { ...same, createdAt: same.createdAt.toISOString() },
     });
   });

@@ -99,7 +99,10 @@ describe('uploading', () => {
     expect(upload).toMatchObject({ partCount: 3, partsDone: [], resumed: false });
     for (const number of [3, 1, 2]) await send(engineer, upload, number);
     const arrival = value(await completeUpload(engineer, upload.deliverableId, sha256));
-    expect(arrival).toEqual({ deliverableId: upload.deliverableId, alreadyDelivered: null });
+    expect(completeUploadResultSchema.parse(arrival)).toMatchObject({
+      deliverable: { id: upload.deliverableId, state: 'waiting', fileName: upload.fileName },
+      alreadyDelivered: null,
+    });
     const stored = await row(upload.deliverableId);
     expect(stored).toMatchObject({ state: 'waiting', sha256_declared: sha256, uploaded_by: engineer.userId });
     expect(
@@ -185,7 +188,7 @@ describe('uploading', () => {
     const first = await deliver(person, file({ fileName: 'first.wav' }));
     const second = await deliver(person, file({ fileName: 'second.wav' }));
     expect(first.alreadyDelivered).toBeNull();
-    expect(second.alreadyDelivered).toMatchObject({ id: first.deliverableId, fileName: 'first.wav' });
+    expect(second.alreadyDelivered).toMatchObject({ id: first.deliverable.id, fileName: 'first.wav' });
     expect((await deliver(await makePerson())).alreadyDelivered).toBeNull();
   });
 
@@ -274,7 +277,7 @@ describe('uploading', () => {
   });
 
   it('does not give up what has arrived', async () => {
-    const { deliverableId } = await deliver(engineer);
+    const deliverableId = (await deliver(engineer)).deliverable.id;
     expect(codeOf(await abortUpload(engineer, deliverableId))).toBe('conflict');
     expect(codeOf(await signParts(engineer, deliverableId, [1]))).toBe('conflict');
   });
