@@ -13,3 +13,10 @@ export async function textFields<K extends string>(
   });
   return Object.fromEntries(entries);
 }
+
+/** Sends the browser on with a GET, with cookies as ready `Set-Cookie` lines. */
+export function redirectWith(location: string, setCookies: readonly string[]): Response {
+  const headers = new Headers({ location });
+  for (const line of setCookies) headers.append('set-cookie', line);
+  return new Response(null, { status: 303, headers });
+}

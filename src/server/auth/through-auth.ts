@@ -1,7 +1,7 @@
 /** Signing in and out by plain forms: the server speaks to Auth.js for the browser, which then needs no script. */
 import { Auth, type AuthConfig } from '@auth/core';
 import { z } from 'zod';
-import type { RefusalCode } from '../refusals.ts';
+import type { Refusal, RefusalCode } from '../refusals.ts';
 
 const csrfSchema = z.object({ csrfToken: z.string().min(1) });
 const redirectSchema = z.object({ url: z.string() });
@@ -36,22 +36,29 @@ async function post(
   return { setCookies: [...csrfCookies, ...answer.headers.getSetCookie()], url: new URL(url, origin) };
 }
 
+const words = {
+  unauthenticated: 'This e-mail address and password do not belong together.',
+  too_many: 'Too many tries. Wait a quarter of an hour, or choose a new password.',
+  forbidden: 'You are not a member of an organisation any more. Ask an administrator to invite you.',
+  unavailable: 'Signing in does not work at the moment. Nothing is lost; try again in a minute.',
+} as const satisfies Partial<Record<RefusalCode, string>>;
 const codeSchema = z.enum(['unauthenticated', 'too_many', 'forbidden']);
 
 /**
- * `Set-Cookie` lines of a new session, or why there is none: the refusal codes of `signIn`, and 'unavailable' for
- * trouble of ours. `origin` is the site's, as the browser sees it.
+ * `Set-Cookie` lines of a new session, or why there is none: the refusals of `signIn`, and 'unavailable' for trouble of
+ * ours. `origin` is the site's, as the browser sees it.
  */
 export async function signInThrough(
   config: AuthConfig,
   origin: string,
-  fields: { email: string; password: string },
-): Promise<{ setCookies: string[] } | { refused: RefusalCode }> {
-  const { setCookies, url } = await post(config, origin, 'callback/credentials', '', fields);
+  { email, password }: { email: string; password: string },
+): Promise<{ setCookies: string[] } | { refusal: Refusal }> {
+  const { setCookies, url } = await post(config, origin, 'callback/credentials', '', { email, password });
   const error = url.searchParams.get('error');
   if (error === null) return { setCookies };
-  const code = codeSchema.safeParse(url.searchParams.get('code'));
-  return { refused: error === 'CredentialsSignin' && code.success ? code.data : 'unavailable' };
+  const told = codeSchema.safeParse(url.searchParams.get('code'));
+  const code = error === 'CredentialsSignin' && told.success ? told.data : 'unavailable';
+  return { refusal: { code, message: words[code] } };
 }
 
 /** Ends the session of these cookies; the lines clear them in the browser. */

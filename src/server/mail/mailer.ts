@@ -15,7 +15,8 @@ export interface Mailer {
 
 /** Starts sending. Database or mail server being away is logged and outlived. */
 export function startMailer(): Mailer {
-  const transport = nodemailer.createTransport(config().SMTP_URL, {
+  const transport = nodemailer.createTransport({
+    url: config().SMTP_URL,
     connectionTimeout: 10_000,
     greetingTimeout: 10_000,
     socketTimeout: 30_000,
