@@ -1,38 +1,23 @@
 /** Loudness over time, derived from the series that a measurement keeps. Pure; nothing is measured again. */
+import { loudnessOf, windowPowers } from '../engine/gating.ts';
 import type { MeasurementSeries } from '../engine/figures.ts';
 import type { Passage } from './api/deliverables.ts';
 
 /** The curves of a passage; excursions are found in them by excursions.ts. */
 export type PassageCurves = Omit<Passage, 'excursions'>;
 
-/** Steps of 10 ms in one value of the passage, and values in a window (EBU Tech 3341: 400 ms and 3 s). */
+/** Steps of 10 ms in one value of the passage, and in a window (EBU Tech 3341: 400 ms and 3 s). */
 const stepsPerValue = 10;
-const momentaryValues = 4;
-const shortTermValues = 30;
+const momentarySteps = 40;
+const shortTermSteps = 300;
 
-/** ITU-R BS.1770-5 Annex 1: loudness in LUFS of a weighted mean square; `null` where there is no energy. */
-const loudnessOf = (meanSquare: number): number | null =>
-  meanSquare > 0 ? -0.691 + 10 * Math.log10(meanSquare) : null;
-
-/** Mean square of every whole 100 ms: each is summed anew, so that no rounding is carried through an hour. */
-function meansOf(energy: ArrayLike<number>, weight: number): Float64Array {
-  const means = new Float64Array(Math.floor(energy.length / stepsPerValue));
-  for (let i = 0; i < means.length; i++) {
-    let sum = 0;
-    for (let j = i * stepsPerValue; j < (i + 1) * stepsPerValue; j++) sum += energy[j];
-    means[i] = (weight * sum) / stepsPerValue;
-  }
-  return means;
-}
-
-/** Loudness of the window that ends with each value; `null` until the first is full. */
-function sliding(means: Float64Array, windowValues: number, length: number): (number | null)[] {
-  const values: (number | null)[] = new Array<number | null>(length).fill(null);
-  for (let i = windowValues - 1; i < means.length; i++) {
-    let sum = 0;
-    for (let j = i - windowValues + 1; j <= i; j++) sum += means[j];
-    values[i] = loudnessOf(sum / windowValues);
-  }
+/** Loudness of the window that ends with each value; `null` until the first is full, and where there is no energy. */
+function sliding(energy: ArrayLike<number>, steps: number, weight: number, length: number): (number | null)[] {
+  const values = new Array<number | null>(length).fill(null);
+  const first = steps / stepsPerValue - 1;
+  windowPowers(energy, steps, stepsPerValue).forEach((power, i) => {
+    if (power > 0) values[first + i] = loudnessOf(weight * power);
+  });
   return values;
 }
 
@@ -46,7 +31,6 @@ export function passageOf(
   { weight = 1 }: { weight?: number } = {},
 ): PassageCurves {
   const length = Math.ceil(Math.max(series.energy.length, series.truePeak.length) / stepsPerValue);
-  const means = meansOf(series.energy, weight);
   const truePeakDbtp = new Array<number | null>(length).fill(null);
   for (let i = 0; i < length; i++) {
     let peak = 0;
@@ -56,8 +40,8 @@ export function passageOf(
   }
   return {
     stepSeconds: 0.1,
-    shortTermLufs: sliding(means, shortTermValues, length),
-    momentaryLufs: sliding(means, momentaryValues, length),
+    shortTermLufs: sliding(series.energy, shortTermSteps, weight, length),
+    momentaryLufs: sliding(series.energy, momentarySteps, weight, length),
     truePeakDbtp,
   };
 }

@@ -140,6 +140,9 @@ export const passageSchema = z.object({
 });
 export type Passage = z.infer<typeof passageSchema>;
 
+/** The spec version whose limits the excursions are beyond: one that the deliverable was judged by. */
+export const passageQuerySchema = z.object({ specVersionId: idSchema.optional() });
+
 export const programmesSchema = z.object({
   items: z.array(z.object({ id: idSchema, title: z.string(), episodes: z.array(z.string()) })),
 });

@@ -46,7 +46,8 @@ import {
   StorageTrouble,
 } from '../storage/storage.ts';
 import { setDeliverableDetails } from './deliverable-details.ts';
-import { readDeliverableRow, type ItemResult } from './deliverables.ts';
+import { readDeliverableRow } from './deliverables.ts';
+import type { ItemResult } from './item-results.ts';
 
 export type NewFile = z.infer<typeof createUploadsSchema>['files'][number];
 export type Arrival = z.infer<typeof completeUploadResultSchema>;
