@@ -43,6 +43,7 @@ const sentences: Record<string, (detail: Detail) => string> = {
   'deliverable.discarded': (d) => `discarded ${delivery(d)}`,
   'upload.aborted': (d) => `gave up the upload of ${delivery(d)}`,
   'member.invited': (d) => `invited ${text(d, 'email') ?? 'somebody'} as ${list(d.roles)}`,
+  'member.invitation_taken_back': (d) => `took back the invitation of ${text(d, 'email') ?? 'somebody'}`,
   'member.joined': (d) => `${named(d, 'A new member')} joined as ${list(d.roles)}`,
   'member.roles_changed': (d) => `made ${named(d, 'a member')} ${list(d.to)} (before: ${list(d.from)})`,
   'member.removed': (d) => `removed ${named(d, 'a member')}`,

@@ -40,6 +40,15 @@ export function allows(who: Standing, permission: Permission): boolean {
   return rightSide && roles.some((role) => (who.roles as readonly string[]).includes(role));
 }
 
+/** Roles that have work on a side: mixing at suppliers, review and specs at distributors, administration at both. */
+export function rolesOfSide(side: Pick<Standing, 'isSupplier' | 'isDistributor'>): Role[] {
+  return [
+    ...(side.isSupplier ? (['mix_engineer'] as const) : []),
+    ...(side.isDistributor ? (['qc_operator', 'spec_owner'] as const) : []),
+    'administrator',
+  ];
+}
+
 /** Where somebody's work begins. */
 export function landingPath(who: Standing): string {
   if (allows(who, 'deliverable:read')) return '/deliverables';
@@ -116,5 +125,6 @@ export const routes: Record<string, Partial<Record<Method, Need>>> = {
   '/api/v1/members/[id]': { PATCH: 'member:edit', DELETE: 'member:edit' },
   '/api/v1/members/[id]/sessions': { DELETE: 'member:edit' },
   '/api/v1/invitations': { POST: 'member:edit' },
+  '/api/v1/invitations/[id]': { DELETE: 'member:edit' },
   '/api/v1/activity': { GET: 'activity:read' },
 };

@@ -1,4 +1,5 @@
 /** One chain of delivery with one of everything that an address can name, and who stands in it. */
+import { randomBytes } from 'node:crypto';
 import type { Knex } from 'knex';
 import type { Role } from '../../src/domain/vocabulary.ts';
 import type { MemberScope } from '../../src/server/scope.ts';
@@ -29,6 +30,8 @@ export interface Holdings {
     assignment: string;
     agreement: string;
     otherSupplier: string;
+    supplierInvitation: string;
+    distributorInvitation: string;
     supplierMember: string;
     distributorMember: string;
     specVersion: string;
@@ -73,6 +76,19 @@ export async function makeHoldings(db: Knex): Promise<Holdings> {
     part_count: 4,
     last_modified_ms: 0,
   });
+  const invitation = async (organisation: MadeOrganisation): Promise<string> => {
+    const [row] = await db('one_time_links')
+      .insert({
+        kind: 'invitation',
+        token_hash: randomBytes(32),
+        email: 'open@people.example',
+        organisation_id: organisation.id,
+        roles: ['administrator'],
+        expires_at: db.raw("now() + interval '1 day'"),
+      })
+      .returning('id');
+    return row.id;
+  };
   return {
     supplier,
     distributor,
@@ -86,6 +102,8 @@ export async function makeHoldings(db: Knex): Promise<Holdings> {
       assignment,
       agreement,
       otherSupplier: otherSupplier.id,
+      supplierInvitation: await invitation(supplier),
+      distributorInvitation: await invitation(distributor),
       supplierMember: await membershipId(db, mixer),
       distributorMember: await membershipId(db, operator),
       specVersion: spec.id,
@@ -116,6 +134,7 @@ export function paramsFor(
     review: ids.submission,
     specs: ids.spec,
     channels: ids.channel,
+    invitations: side === 'supplier' ? ids.supplierInvitation : ids.distributorInvitation,
     members: side === 'supplier' ? ids.supplierMember : ids.distributorMember,
   };
   const id = byPlace[place];

@@ -127,6 +127,18 @@ export async function endLinks(
     .update({ expires_at: db.fn.now() });
 }
 
+/** Ends one open invitation of the scope's organisation; gives its address, or `null` when there is none. */
+export async function endInvitation(db: Db, scope: Scope, id: string): Promise<string | null> {
+  const rows: { email: string }[] = await db('one_time_links')
+    .where({ id, kind: 'invitation' })
+    .whereNull('used_at')
+    .whereRaw('expires_at > now()')
+    .modify(within(scope, 'organisation_id'))
+    .update({ expires_at: db.fn.now() })
+    .returning('email');
+  return rows[0]?.email ?? null;
+}
+
 /** Open invitations of the scope's organisation, the newest first. */
 export async function listOpenInvitations(db: Db, scope: Scope): Promise<LinkRecord[]> {
   const rows: LinkRow[] = await links(db)

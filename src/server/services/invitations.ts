@@ -1,12 +1,13 @@
 /** Invitations: an administrator's offer of membership, sent by mail, taken once. */
 import { z } from 'zod';
 import { passwordSchema } from '../../domain/api/people.ts';
+import { rolesOfSide } from '../../domain/permissions.ts';
 import { roleNames, type Role } from '../../domain/vocabulary.ts';
 import { hashOfToken, newToken, tokenPattern } from '../auth/one-time-tokens.ts';
 import { hashPassword } from '../auth/passwords.ts';
 import { recordEvent } from '../db/audit-repository.ts';
 import { db, inTransaction } from '../db/connection.ts';
-import { endLinks, findLink, insertLink, takeLink } from '../db/one-time-links-repository.ts';
+import { endInvitation, endLinks, findLink, insertLink, takeLink } from '../db/one-time-links-repository.ts';
 import { findMemberByUser, findUserByEmail, insertUser, upsertMembership } from '../db/people-repository.ts';
 import { queueMail } from '../mail/outbox.ts';
 import { done, lacking, refuse, type Answer } from '../refusals.ts';
@@ -19,15 +20,6 @@ const linkIsDead = refuse(
   'gone',
   'This invitation was taken already, taken back, or is more than a week old. Ask for a new one.',
 );
-
-/** Roles that make sense on a side: mixing at suppliers, review and specs at distributors, administration at both. */
-export function rolesOfSide(side: { isSupplier: boolean; isDistributor: boolean }): Role[] {
-  return [
-    ...(side.isSupplier ? (['mix_engineer'] as const) : []),
-    ...(side.isDistributor ? (['qc_operator', 'spec_owner'] as const) : []),
-    'administrator',
-  ];
-}
 
 /** A refusal when one of the roles does not exist on this side, else `null`. */
 export function foreignRole(scope: MemberScope, roles: readonly Role[]): Answer<never> | null {
@@ -85,6 +77,24 @@ export async function invite(
       detail: { email, roles: roles.map((role) => roleNames[role]) },
     });
     return done({ id, email, roles, expiresAt: expiresAt.toISOString() });
+  });
+}
+
+/** Ends an open invitation: its link works no more. `not_found` for one that was taken, is over, or is not the organisation's. */
+export async function takeBackInvitation(scope: MemberScope, id: string): Promise<Answer<{ id: string }>> {
+  const no = lacking(scope, 'member:edit');
+  if (no) return no;
+  return inTransaction(async (trx) => {
+    const email = await endInvitation(trx, scope, id);
+    if (email === null) return refuse('not_found', 'There is no such open invitation.');
+    await recordEvent(trx, scope, {
+      organisationId: scope.organisationId,
+      action: 'member.invitation_taken_back',
+      subjectKind: 'invitation',
+      subjectId: id,
+      detail: { email },
+    });
+    return done({ id });
   });
 }
 

@@ -2,7 +2,12 @@ import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import { hashPassword } from '../../../src/server/auth/passwords.ts';
 import { resumeSession, signIn } from '../../../src/server/services/sign-in.ts';
 import { listActivity } from '../../../src/server/services/activity.ts';
-import { acceptInvitation, invite, readInvitation } from '../../../src/server/services/invitations.ts';
+import {
+  acceptInvitation,
+  invite,
+  readInvitation,
+  takeBackInvitation,
+} from '../../../src/server/services/invitations.ts';
 import { endSessions, listMembers, removeMember, setRoles } from '../../../src/server/services/members.ts';
 import type { MemberScope } from '../../../src/server/scope.ts';
 import {
@@ -114,6 +119,24 @@ describe('inviting', () => {
     expect(await readInvitation(older)).toMatchObject({ refusal: { code: 'gone' } });
     const list = await listMembers(admin);
     expect(list.ok && list.value.invitations).toMatchObject([{ roles: ['mix_engineer', 'administrator'] }]);
+  });
+
+  it('can be taken back while it is open', async () => {
+    const { admin } = await place();
+    const invited = await invite(admin, { email: 'mistaken@people.example', roles: ['mix_engineer'] });
+    if (!invited.ok) throw new Error('not invited');
+    const token = await tokenMailedTo('mistaken@people.example');
+    const elsewhere = await place();
+    expect(await takeBackInvitation(elsewhere.admin, invited.value.id)).toMatchObject({
+      refusal: { code: 'not_found' },
+    });
+    expect((await takeBackInvitation(admin, invited.value.id)).ok).toBe(true);
+    expect(await acceptInvitation(token, { name: 'N', password: 'twelve or more' })).toMatchObject({
+      refusal: { code: 'gone' },
+    });
+    expect(await takeBackInvitation(admin, invited.value.id)).toMatchObject({
+      refusal: { code: 'not_found' },
+    });
   });
 
   it('brings a removed member back with the new roles', async () => {
