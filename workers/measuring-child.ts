@@ -1,11 +1,17 @@
 // The process that measures, one file at a time, told by workers/measuring.ts; it ends when that ends.
 import { measureObject } from '../src/server/services/measure-object.ts';
+import { makeScratch } from '../src/server/queue/measuring-scratch.ts';
 import { toChildSchema, type FromChild } from '../src/server/queue/measuring-contract.ts';
 
 const progressEveryMilliseconds = 250;
 const aliveEveryMilliseconds = 5_000;
 
-const tell = (message: FromChild) => process.send?.(message);
+const scratchDir = await makeScratch();
+// A message that cannot be sent means what 'disconnect' below means, only sooner.
+const tell = (message: FromChild) =>
+  void process.send?.(message, undefined, undefined, (error) => {
+    if (error) process.exit(1);
+  });
 
 /** Runs `tellIt` at most once per interval. */
 function throttled<T>(milliseconds: number, tellIt: (value: T) => void): (value: T) => void {
@@ -33,6 +39,7 @@ process.on('message', (raw) => {
     onRead: throttled<void>(aliveEveryMilliseconds, () => tell({ kind: 'alive' })),
     // Nothing ends early in here: the worker kills the process instead, which frees everything.
     signal: new AbortController().signal,
+    scratchDir,
   }).then((outcome) => {
     process.title = 'plimsoll measuring nothing';
     tell({ kind: 'outcome', outcome });

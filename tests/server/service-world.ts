@@ -1,5 +1,8 @@
 /** The tests' world with what uploads and measuring need besides: a Redis database and a bucket of their own. */
 import { randomUUID } from 'node:crypto';
+import { mkdtemp, rm } from 'node:fs/promises';
+import { tmpdir } from 'node:os';
+import { join } from 'node:path';
 import type { Role } from '../../src/domain/vocabulary.ts';
 import { db } from '../../src/server/db/connection.ts';
 import { closeEventsHub } from '../../src/server/events-hub.ts';
@@ -14,7 +17,9 @@ import { makeAgreement, makeChannel, makeMember, makeOrganisation, openWorld } f
  * not meet; `overrides` puts something between, such as a storage gate.
  */
 export async function openServiceWorld(redisDatabase: number, overrides: Record<string, string> = {}) {
+  const scratch = await mkdtemp(join(tmpdir(), 'plimsoll-test-'));
   const environment = {
+    SCRATCH_DIR: scratch,
     REDIS_URL: `${process.env.TEST_REDIS_URL?.replace(/\/\d*$/, '')}/${redisDatabase}`,
     S3_BUCKET: `test-${randomUUID().slice(0, 8)}`,
     MEASURE_CONCURRENCY: '2',
@@ -31,6 +36,7 @@ export async function openServiceWorld(redisDatabase: number, overrides: Record<
       await redis().flushdb();
       closeStorage();
       await world.close();
+      await rm(scratch, { recursive: true, force: true });
     },
   };
 }

@@ -25,21 +25,28 @@ export interface MeasuringChildren {
 
 /**
  * `childFile` is the entry point that measures; it is run by the same Node with the same flags. A child that ends before
- * it has loaded is trouble of the surroundings (a broken build), one that ends later died of its file.
+ * it has loaded is trouble of the surroundings (a broken build), one that ends later died of its file. `onEnded` clears up
+ * after a process, however it ended.
  */
 export function measuringChildren(
   childFile: URL,
-  { silenceMilliseconds = longestSilenceMilliseconds } = {},
+  { silenceMilliseconds = longestSilenceMilliseconds, onEnded = (_pid: number) => {} } = {},
 ): MeasuringChildren {
   const loaded = new WeakSet<ChildProcess>();
   const idle: ChildProcess[] = [];
   let closed = false;
 
-  const start = () =>
-    fork(fileURLToPath(childFile), [], {
+  const start = () => {
+    const child = fork(fileURLToPath(childFile), [], {
       execArgv: [...process.execArgv, `--max-old-space-size=${heapMebibytes}`],
       serialization: 'json',
     });
+    // 'close' and not 'exit': that one is listened to by whoever waits for an outcome.
+    child.on('close', () => {
+      if (child.pid !== undefined) onEnded(child.pid);
+    });
+    return child;
+  };
 
   const measure: MeasureElsewhere = (task, { onProgress, signal }) =>
     new Promise<MeasuringOutcome>((resolve, reject) => {

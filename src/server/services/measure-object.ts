@@ -2,11 +2,11 @@
 import { createHash } from 'node:crypto';
 import { engineVersion } from '../../engine/figures.ts';
 import { encodeSeries } from '../../engine/series.ts';
+import { UnreadableError, type ByteSource } from '../../engine/source.ts';
 import { measureSource } from '../measuring/measure-source.ts';
 import type { MeasuringOutcome, MeasuringTask } from '../queue/measuring-contract.ts';
 import type { Progress } from '../queue/progress.ts';
 import { HashingSource } from '../storage/hashing-source.ts';
-import type { ByteSource } from '../storage/piecewise-source.ts';
 import {
   headObject,
   ObjectMissing,
@@ -51,14 +51,20 @@ class WatchedSource implements ByteSource {
   }
 }
 
+interface Options {
+  onProgress: (progress: Progress) => void;
+  /** A sign of life. */
+  onRead: () => void;
+  signal: AbortSignal;
+  /** Where files that are not read natively are staged for the decoder. */
+  scratchDir: string;
+}
+
 /**
  * Ends in an outcome and never throws: 'file' with a code and a sentence, 'surroundings' for storage, scratch space and
- * an abort, 'surprise' for what nobody foresaw. `onRead` is a sign of life.
+ * an abort, 'surprise' for what nobody foresaw.
  */
-export async function measureObject(
-  task: MeasuringTask,
-  options: { onProgress: (progress: Progress) => void; onRead: () => void; signal: AbortSignal },
-): Promise<MeasuringOutcome> {
+export async function measureObject(task: MeasuringTask, options: Options): Promise<MeasuringOutcome> {
   const began = performance.now();
   let watched: WatchedSource | null = null;
   try {
@@ -67,6 +73,7 @@ export async function measureObject(
     watched = new WatchedSource(objectSource(task.storageKey, head.byteSize, options.signal), options.onRead);
     const source = new HashingSource(watched);
     const read = await readAll(task, source, options);
+    if (watched.trouble) throw watched.trouble;
     const sha256 = await source.sha256();
     if (task.sha256Declared !== null && sha256 !== task.sha256Declared)
       return { kind: 'file', ...hashMismatch, sha256 };
@@ -93,18 +100,18 @@ type Read = Awaited<ReturnType<typeof measureSource>>;
 async function readAll(
   task: MeasuringTask,
   source: ByteSource,
-  { onProgress, signal }: { onProgress: (progress: Progress) => void; signal: AbortSignal },
+  { onProgress, signal, scratchDir }: Options,
 ): Promise<({ ok: true } & Read) | { ok: false; code: string; message: string }> {
   try {
     const read = await measureSource(source, task.fileName, {
-      onProgress: (secondsDone: number, secondsTotal: number | null) =>
-        onProgress({ secondsDone, secondsTotal }),
+      onProgress: (secondsDone, secondsTotal) => onProgress({ secondsDone, secondsTotal }),
       signal,
+      scratchDir,
     });
     return { ok: true, ...read };
   } catch (error) {
-    if (error instanceof Error && error.name === 'UnreadableError' && 'code' in error && !signal.aborted)
-      return { ok: false, code: String(error.code), message: error.message };
+    if (error instanceof UnreadableError && !signal.aborted)
+      return { ok: false, code: error.code, message: error.message };
     throw error;
   }
 }

@@ -1,6 +1,6 @@
 /** Takes the SHA-256 of a source while somebody else reads it, so that what was measured is what was hashed. */
 import { createHash } from 'node:crypto';
-import type { ByteSource } from './piecewise-source.ts';
+import type { ByteSource } from '../../engine/source.ts';
 
 const catchUpBytes = 1024 ** 2;
 

@@ -1,10 +1,5 @@
 /** An object as the engine reads it: byte ranges, in constant memory, the next piece fetched ahead. */
-
-/** What the engine's containers read from: `read` gives fewer bytes only at the end. */
-export interface ByteSource {
-  readonly size: number;
-  read(offset: number, length: number): Promise<Uint8Array>;
-}
+import type { ByteSource } from '../../engine/source.ts';
 
 const pieceBytes = 4 * 1024 ** 2;
 /** The piece in use, the one before it (reads straddle), the one fetched ahead, and one for a look at the end. */

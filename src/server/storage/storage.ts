@@ -15,10 +15,11 @@ import {
   UploadPartCommand,
 } from '@aws-sdk/client-s3';
 import { getSignedUrl } from '@aws-sdk/s3-request-presigner';
+import type { ByteSource } from '../../engine/source.ts';
 import { config } from '../config.ts';
 import { log } from '../log.ts';
 import { contentTypeOf } from './content-type.ts';
-import { PiecewiseSource, type ByteSource } from './piecewise-source.ts';
+import { PiecewiseSource } from './piecewise-source.ts';
 
 /** Storage is away or answers wrongly: trouble of the surroundings, worth another try. */
 export class StorageTrouble extends Error {

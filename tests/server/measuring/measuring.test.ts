@@ -1,4 +1,5 @@
 import { createHash } from 'node:crypto';
+import { tmpdir } from 'node:os';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import { db } from '../../../src/server/db/connection.ts';
 import type { MeasureElsewhere, MeasuringOutcome } from '../../../src/server/queue/measuring-contract.ts';
@@ -28,7 +29,8 @@ afterAll(async () => {
 });
 
 /** The real measuring, in this process. */
-const here: MeasureElsewhere = (task, options) => measureObject(task, { ...options, onRead: () => {} });
+const here: MeasureElsewhere = (task, options) =>
+  measureObject(task, { ...options, onRead: () => {}, scratchDir: tmpdir() });
 const dies: MeasureElsewhere = () => Promise.reject(new Error('ended with SIGSEGV'));
 const measure = (id: string, how: MeasureElsewhere = here, signal = new AbortController().signal) =>
   measureDeliverable(id, how, signal);

@@ -2,6 +2,7 @@ import { createHash, randomBytes } from 'node:crypto';
 import { S3Client, UploadPartCommand } from '@aws-sdk/client-s3';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import {
+  completeUploadResultSchema,
   createUploadsResultSchema,
   uploadListSchema,
   type Upload,
