@@ -1,3 +1,4 @@
+import { randomUUID } from 'node:crypto';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import authConfig from '../../../src/auth.config.ts';
 import { hashPassword } from '../../../src/server/auth/passwords.ts';
@@ -11,7 +12,6 @@ const origin = 'http://plimsoll.example';
 const password = 'twelve or more';
 let world: World;
 let passwordHash: string;
-let hosts = 0;
 
 beforeAll(async () => {
   world = await openWorld();
@@ -22,7 +22,7 @@ afterAll(() => world.close());
 const somebody = async () =>
   makeMember(world.db, await makeOrganisation(world.db, 'supplier'), ['mix_engineer'], { passwordHash });
 const from = <T>(work: () => T): T =>
-  withRequestOrigin({ address: `10.4.0.${(hosts += 1)}`, userAgent: 'a browser' }, work);
+  withRequestOrigin({ address: randomUUID(), userAgent: 'a browser' }, work);
 const pairs = (lines: readonly string[]) => lines.map((line) => line.split(';', 1)[0]).join('; ');
 
 async function cookiesOf(email: string): Promise<string[]> {

@@ -1,3 +1,4 @@
+import { randomUUID } from 'node:crypto';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import { hashPassword } from '../../../src/server/auth/passwords.ts';
 import { resumeSession, signIn } from '../../../src/server/services/sign-in.ts';
@@ -18,7 +19,7 @@ import {
   type World,
 } from '../../factories/world.ts';
 
-const from = { address: '10.3.3.3', userAgent: '' };
+const from = { address: randomUUID(), userAgent: '' };
 let world: World;
 beforeAll(async () => {
   world = await openWorld();

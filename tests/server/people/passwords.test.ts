@@ -1,10 +1,11 @@
+import { randomUUID } from 'node:crypto';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import { hashPassword } from '../../../src/server/auth/passwords.ts';
 import { forgotPassword, readResetLink, resetPassword } from '../../../src/server/services/passwords.ts';
 import { resumeSession, signIn } from '../../../src/server/services/sign-in.ts';
 import { makeMember, makeOrganisation, openWorld, type World } from '../../factories/world.ts';
 
-const from = { address: '10.2.2.2', userAgent: '' };
+const from = { address: randomUUID(), userAgent: '' };
 let world: World;
 beforeAll(async () => {
   world = await openWorld();
@@ -31,8 +32,8 @@ async function tokenMailedTo(email: string): Promise<string> {
 describe('a forgotten password', () => {
   it('is answered the same whether somebody has the address or not, and mails only somebody', async () => {
     const member = await somebody();
-    const known = await forgotPassword(member.email.toUpperCase(), '10.0.0.1');
-    const unknown = await forgotPassword('nobody@people.example', '10.0.0.2');
+    const known = await forgotPassword(member.email.toUpperCase(), randomUUID());
+    const unknown = await forgotPassword('nobody@people.example', randomUUID());
     expect(known).toEqual({ ok: true, value: null });
     expect(unknown).toEqual(known);
     expect(await mailsTo(member.email)).toHaveLength(1);
@@ -43,7 +44,7 @@ describe('a forgotten password', () => {
     const member = await somebody();
     const before = await signIn(member.email, 'the old password', from);
     if (!before.ok) throw new Error('no session');
-    await forgotPassword(member.email, '10.0.0.3');
+    await forgotPassword(member.email, randomUUID());
     const token = await tokenMailedTo(member.email);
     expect(await readResetLink(token)).toEqual({ ok: true, value: { email: member.email } });
 
@@ -61,7 +62,7 @@ describe('a forgotten password', () => {
 
   it('keeps the hash of the token only, for an hour', async () => {
     const member = await somebody();
-    await forgotPassword(member.email, '10.0.0.4');
+    await forgotPassword(member.email, randomUUID());
     const token = await tokenMailedTo(member.email);
     const link = await world.db('one_time_links').where('user_id', member.userId).first();
     expect(JSON.stringify(link)).not.toContain(token);
@@ -78,7 +79,7 @@ describe('a forgotten password', () => {
 
   it('refuses a short password and keeps the link for a better one', async () => {
     const member = await somebody();
-    await forgotPassword(member.email, '10.0.0.5');
+    await forgotPassword(member.email, randomUUID());
     const token = await tokenMailedTo(member.email);
     expect(await resetPassword(token, 'short')).toMatchObject({
       refusal: { code: 'bad_input', fields: { password: 'Use 12 characters or more.' } },
@@ -88,15 +89,15 @@ describe('a forgotten password', () => {
 
   it('makes an older link void when a newer one is asked for', async () => {
     const member = await somebody();
-    await forgotPassword(member.email, '10.0.0.6');
+    await forgotPassword(member.email, randomUUID());
     const older = await tokenMailedTo(member.email);
-    await forgotPassword(member.email, '10.0.0.6');
+    await forgotPassword(member.email, randomUUID());
     expect(await readResetLink(older)).toMatchObject({ refusal: { code: 'gone' } });
   });
 
   it('lets only one of two uses at once through', async () => {
     const member = await somebody();
-    await forgotPassword(member.email, '10.0.0.7');
+    await forgotPassword(member.email, randomUUID());
     const token = await tokenMailedTo(member.email);
     const answers = await Promise.all([
       resetPassword(token, 'the first of two'),
@@ -108,7 +109,7 @@ describe('a forgotten password', () => {
   it('does not fill a mailbox', async () => {
     const member = await somebody();
     const answers = [];
-    for (let i = 0; i < 7; i += 1) answers.push(await forgotPassword(member.email, `10.0.1.${i}`));
+    for (let i = 0; i < 7; i += 1) answers.push(await forgotPassword(member.email, randomUUID()));
     expect(answers.filter((answer) => answer.ok)).toHaveLength(5);
     expect(answers.at(-1)).toMatchObject({ refusal: { code: 'too_many' } });
   });
