@@ -106,7 +106,7 @@ const worstOutcome = `(SELECT v.outcome FROM deliverable_channels dc JOIN verdic
 
 /** The newest measurement of the first presentation: the one that the row shows. */
 const newestMeasurement = `LEFT JOIN LATERAL (SELECT mm.* FROM measurements mm JOIN presentations pr ON pr.id = mm.presentation_id
-  WHERE mm.deliverable_id = d.id ORDER BY pr.position, mm.created_at DESC, mm.id LIMIT 1) m ON true`;
+  WHERE mm.deliverable_id = d.id ORDER BY pr.position, mm.created_at DESC, mm.id DESC LIMIT 1) m ON true`;
 
 const figure = (path: string) => `(m.figures #>> '{${path}}')::float8`;
 export const deliverableSortKeys: Record<z.infer<typeof deliverableQuerySchema>['sort'], SortKey> = {

@@ -173,7 +173,8 @@ describe('what a report draws and plays', () => {
     // -0.691 + 10 lg 0.01 (ITU-R BS.1770-5 Annex 1), in hundredths.
     expect(passage.shortTermLufs[29]).toBe(-20.69);
     expect(passage.truePeakDbtp[23]).toBe(1.58);
-    expect(passage.excursions).toMatchObject([{ ruleId: 'true-peak', startSeconds: 2.3 }]);
+    expect(passage.excursions).toMatchObject([{ ruleId: 'true-peak' }]);
+    expect(passage.excursions[0].startSeconds).toBeCloseTo(2.3, 6);
     expect(valueOf(await getDeliverablePassage(chain.mixer, id)).excursions).toEqual([]);
   });
 
