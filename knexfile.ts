@@ -1,13 +1,19 @@
-// For knex's own command line (npm run migrate). The owner's role migrates; the application's role could not.
 import type { Knex } from 'knex';
+import { config } from './src/server/config.ts';
 
-const connection = process.env.MIGRATION_DATABASE_URL;
-if (!connection)
-  throw new Error('MIGRATION_DATABASE_URL is missing: the address of the database as its owner.');
+const { MIGRATION_DATABASE_URL } = config();
+if (!MIGRATION_DATABASE_URL)
+  throw new Error('Migrations need MIGRATION_DATABASE_URL: the address with the owner’s role.');
 
 const settings: Knex.Config = {
   client: 'pg',
-  connection,
-  migrations: { directory: './migrations', extension: 'ts', loadExtensions: ['.ts'] },
+  connection: MIGRATION_DATABASE_URL,
+  pool: { min: 0, max: 2 },
+  migrations: {
+    directory: './migrations',
+    extension: 'ts',
+    loadExtensions: ['.ts'],
+    tableName: 'knex_migrations',
+  },
 };
 export default settings;

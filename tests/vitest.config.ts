@@ -2,7 +2,7 @@
 import { fileURLToPath } from 'node:url';
 import { getViteConfig } from 'astro/config';
 
-const root = fileURLToPath(new URL('..', import.meta.url));
+const root = fileURLToPath(new URL('..', import.meta.url)).replace(/\/$/, '');
 
 export default getViteConfig(
   {
@@ -11,10 +11,12 @@ export default getViteConfig(
       root,
       include: ['tests/**/*.test.{ts,tsx}'],
       exclude: ['tests/e2e/**', 'node_modules/**'],
+      environment: 'node',
       globalSetup: ['tests/setup/services.ts'],
-      env: { LOG_LEVEL: process.env.LOG_LEVEL ?? 'silent' },
-      testTimeout: 30_000,
-      hookTimeout: 60_000,
+      pool: 'forks',
+      testTimeout: 60_000,
+      hookTimeout: 120_000,
+      env: { LOG_LEVEL: 'silent', AWS_SDK_JS_NODE_VERSION_SUPPORT_WARNING_DISABLED: 'true' },
     },
   },
   { root, configFile: 'astro.config.mjs' },

@@ -1,41 +1,30 @@
-/** A database per test file: a copy of the migrated template, gone when the file is done. */
 import { randomBytes } from 'node:crypto';
-import pg from 'pg';
-
-export const templateDatabase = 'plimsoll_template';
+import knex from 'knex';
 
 export interface FreshDatabase {
-  /** May change everything: for making rows and looking at them. */
+  /** With the owner's role, for rows and for looking; with the application's, for the code under test. */
   ownerUrl: string;
-  /** What the product runs as. */
   appUrl: string;
   drop(): Promise<void>;
 }
 
-async function asSuperuser(sql: string): Promise<void> {
-  const client = new pg.Client({ connectionString: `${process.env.TEST_PG_URL}/postgres` });
-  await client.connect();
-  try {
-    await client.query(sql);
-  } finally {
-    await client.end();
-  }
-}
-
+/** A migrated database that nobody else has: a clone of the run's template. */
 export async function freshDatabase(): Promise<FreshDatabase> {
-  if (!process.env.TEST_PG_URL)
-    throw new Error('TEST_PG_URL is missing: run vitest with tests/vitest.config.ts');
+  const base = process.env.TEST_PG_URL;
+  if (!base) throw new Error('TEST_PG_URL is missing: run tests with tests/vitest.config.ts.');
   const name = `test_${randomBytes(6).toString('hex')}`;
-  await asSuperuser(`CREATE DATABASE ${name} TEMPLATE ${templateDatabase} OWNER plimsoll_owner`);
-  const as = (user: string, password: string) => {
-    const url = new URL(`${process.env.TEST_PG_URL}/${name}`);
-    url.username = user;
-    url.password = password;
-    return url.href;
+  const asAdmin = async (sql: string) => {
+    const admin = knex({ client: 'pg', connection: base, pool: { min: 0, max: 1 } });
+    await admin.raw(sql).finally(() => admin.destroy());
+  };
+  await asAdmin(`CREATE DATABASE ${name} TEMPLATE plimsoll_template OWNER plimsoll_owner`);
+  const as = (username: string, password: string) => {
+    const url = new URL(base);
+    return Object.assign(url, { username, password, pathname: `/${name}` }).href;
   };
   return {
     ownerUrl: as('plimsoll_owner', 'owner'),
     appUrl: as('plimsoll_app', 'app'),
-    drop: () => asSuperuser(`DROP DATABASE ${name} WITH (FORCE)`),
+    drop: () => asAdmin(`DROP DATABASE ${name} WITH (FORCE)`),
   };
 }
