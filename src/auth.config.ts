@@ -2,7 +2,7 @@ import Credentials from '@auth/core/providers/credentials';
 import { CredentialsSignin } from '@auth/core/errors';
 import { defineConfig } from 'auth-astro';
 import { z } from 'zod';
-import { requestOrigin } from './server/auth/request-origin.ts';
+import { keepTrouble, requestOrigin } from './server/auth/request-origin.ts';
 import { config } from './server/config.ts';
 import { sessionSeconds } from './server/db/sessions-repository.ts';
 import { log } from './server/log.ts';
@@ -17,6 +17,15 @@ class Refused extends CredentialsSignin {
   constructor(code: string) {
     super(code);
     this.code = code;
+  }
+}
+
+async function resume(sessionId: string, sessionVersion: number): Promise<MemberScope | null> {
+  try {
+    return await resumeSession(sessionId, sessionVersion);
+  } catch (error) {
+    keepTrouble(error);
+    throw error;
   }
 }
 
@@ -50,7 +59,7 @@ export default defineConfig({
   pages: { signIn: '/sign-in', error: '/sign-in', signOut: '/' },
   logger: {
     error(error) {
-      // A wrong password and a cookie that means nothing are everyday events, not errors.
+      // A wrong password and a cookie that means nothing are everyday events, not errors; middleware logs the rest of these.
       if (error instanceof CredentialsSignin || error.name === 'JWTSessionError') return;
       log.error({ err: error }, 'auth');
     },
@@ -74,7 +83,7 @@ export default defineConfig({
     async jwt({ token, user }) {
       if (user) return { sub: user.id, sid: user.sid, sv: user.sv };
       const claims = claimsSchema.safeParse(token);
-      const scope = claims.success ? await resumeSession(claims.data.sid, claims.data.sv) : null;
+      const scope = claims.success ? await resume(claims.data.sid, claims.data.sv) : null;
       // `null` tells Auth.js to drop the cookie: the session was ended from our side.
       return scope && { ...token, scope };
     },

@@ -2,8 +2,9 @@
 import type { APIContext, MiddlewareHandler } from 'astro';
 import { getSession } from 'auth-astro/server';
 import { allows, routes, type Need } from '@/domain/permissions.ts';
-import { withRequestOrigin } from '@/server/auth/request-origin.ts';
+import { keptTrouble, withRequestOrigin } from '@/server/auth/request-origin.ts';
 import { config } from '@/server/config.ts';
+import { log } from '@/server/log.ts';
 import type { MemberScope } from '@/server/scope.ts';
 import { refusalStatus, type RefusalCode } from '@/server/refusals.ts';
 
@@ -61,6 +62,15 @@ async function answer(context: APIContext, next: Parameters<MiddlewareHandler>[1
   // Auth.js answers for itself, and health must not need a database session.
   const asks = !pathname.startsWith('/api/auth/') && pathname !== '/api/health';
   if (asks) context.locals.scope = (await getSession(context.request))?.scope ?? null;
+  const trouble = keptTrouble();
+  if (trouble !== undefined) {
+    if (!isApi(context)) throw trouble;
+    log.error({ err: trouble, path: pathname }, 'a session could not be looked up');
+    return problem(
+      'unavailable',
+      'We cannot look up your session at the moment. Nothing is lost; try again in a minute.',
+    );
+  }
   if (mayPass(context.locals.scope, need)) {
     if (context.routePattern === '/404' && isApi(context))
       return problem('not_found', 'There is nothing under this address.');
