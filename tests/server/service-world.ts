@@ -49,7 +49,8 @@ export async function makePerson(
   return makeMember(db(), await makeOrganisation(db(), side), roles);
 }
 
-const organisationOf = (scope: MemberScope) => ({
+/** The person's organisation as the world's makers take it. */
+export const organisationOf = (scope: MemberScope) => ({
   id: scope.organisationId,
   name: scope.organisationName,
   isSupplier: scope.isSupplier,

@@ -1,5 +1,9 @@
+import { execFile } from 'node:child_process';
 import { createHash } from 'node:crypto';
+import { mkdtemp, readdir, readFile, rm, writeFile } from 'node:fs/promises';
 import { tmpdir } from 'node:os';
+import { join } from 'node:path';
+import { promisify } from 'node:util';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import { db } from '../../../src/server/db/connection.ts';
 import type { MeasureElsewhere, MeasuringOutcome } from '../../../src/server/queue/measuring-contract.ts';
@@ -10,7 +14,8 @@ import { measureObject } from '../../../src/server/services/measure-object.ts';
 import { measureDeliverable } from '../../../src/server/services/measuring.ts';
 import { getObject } from '../../../src/server/storage/storage.ts';
 import { arrivedFile } from '../arrived-file.ts';
-import { makePerson, openServiceWorld } from '../service-world.ts';
+import { makeAssignment, makeSpecVersion } from '../../factories/world.ts';
+import { makeAgreedChannel, makePerson, openServiceWorld, organisationOf } from '../service-world.ts';
 import { gateBefore } from '../storage-gate.ts';
 import { sineWave } from '../wave-file.ts';
 
@@ -57,6 +62,50 @@ describe('measuring a deliverable', () => {
       'deliverable.measured',
     ]);
     expect(await redis().get(progressKey(id))).toBeNull();
+  });
+
+  it('judges at once against the spec of each channel that the deliverable is for', async () => {
+    const distributor = await makePerson(['spec_owner'], 'distributor');
+    const channelId = await makeAgreedChannel(distributor, engineer);
+    const { id: specVersionId, specId } = await makeSpecVersion(db(), organisationOf(distributor));
+    await makeAssignment(db(), organisationOf(distributor), { id: channelId }, specId);
+    const id = await arrivedFile(engineer, wave);
+    await db()('deliverable_channels').insert({
+      deliverable_id: id,
+      organisation_id: engineer.organisationId,
+      channel_id: channelId,
+    });
+    await measure(id);
+    const verdicts = await db()('verdicts as v')
+      .join('deliverable_channels as dc', 'dc.verdict_id', 'v.id')
+      .where('dc.deliverable_id', id);
+    expect(verdicts).toHaveLength(1);
+    // The sine stands at -20.0 LUFS where -23.0 is asked.
+    expect(verdicts[0]).toMatchObject({ spec_version_id: specVersionId, outcome: 'fail' });
+  });
+
+  it('measures what has to be decoded first, and leaves nothing on the scratch disk', async () => {
+    const scratchDir = await mkdtemp(join(tmpdir(), 'plimsoll-test-'));
+    await writeFile(join(scratchDir, 'a.wav'), wave);
+    await promisify(execFile)('ffmpeg', [
+      '-v',
+      'error',
+      '-i',
+      join(scratchDir, 'a.wav'),
+      join(scratchDir, 'a.flac'),
+    ]);
+    const id = await arrivedFile(engineer, await readFile(join(scratchDir, 'a.flac')), {
+      fileName: 'tallow.flac',
+    });
+    await Promise.all(['a.wav', 'a.flac'].map((name) => rm(join(scratchDir, name))));
+    const decoding: MeasureElsewhere = (task, options) =>
+      measureObject(task, { ...options, onRead: () => {}, scratchDir });
+    expect(await measure(id, decoding)).toEqual({ kind: 'measured' });
+    const [made] = await measurements(id);
+    expect(made.format).toMatchObject({ container: 'FLAC', channels: 2, sampleRateHz: 48_000 });
+    expect(made.figures.loudness.integratedLufs).toBeCloseTo(-20, 1);
+    expect(await readdir(scratchDir)).toEqual([]);
+    await rm(scratchDir, { recursive: true });
   });
 
   it('doubles nothing when it is run again, or twice at once', async () => {

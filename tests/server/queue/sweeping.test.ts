@@ -1,5 +1,6 @@
 import { randomUUID } from 'node:crypto';
 import { afterAll, beforeAll, beforeEach, describe, expect, it } from 'vitest';
+import { specBodySchema } from '../../../src/domain/spec.ts';
 import { db } from '../../../src/server/db/connection.ts';
 import {
   enqueueMeasuring,
@@ -11,8 +12,9 @@ import { redis } from '../../../src/server/redis.ts';
 import type { MemberScope } from '../../../src/server/scope.ts';
 import { sweep } from '../../../src/server/services/sweeping.ts';
 import { createUploads, listUploads } from '../../../src/server/services/uploads.ts';
+import { makeAssignment, makeDeliverable, makeSpecVersion } from '../../factories/world.ts';
 import { arrivedFile } from '../arrived-file.ts';
-import { makePerson, openServiceWorld } from '../service-world.ts';
+import { makeAgreedChannel, makePerson, openServiceWorld, organisationOf } from '../service-world.ts';
 
 let world: Awaited<ReturnType<typeof openServiceWorld>>;
 let engineer: MemberScope;
@@ -83,6 +85,48 @@ describe('the sweep', () => {
     }));
     await db()('deliverables').insert(rows);
     expect(await sweep()).toMatchObject({ enqueued: 203 });
+  });
+
+  it('judges anew what is measured when a version has come into force by the clock', async () => {
+    const distributor = await makePerson(['spec_owner'], 'distributor');
+    const organisation = organisationOf(distributor);
+    const channelId = await makeAgreedChannel(distributor, engineer);
+    const { specId, id: first } = await makeSpecVersion(db(), organisation);
+    await makeAssignment(db(), organisation, { id: channelId }, specId);
+    const measured = await makeDeliverable(db(), engineer, { channelIds: [channelId] });
+    const standing = () =>
+      db()('deliverable_channels as dc')
+        .join('verdicts as v', 'v.id', 'dc.verdict_id')
+        .where('dc.deliverable_id', measured.id)
+        .first('v.spec_version_id', 'v.outcome');
+    await sweep();
+    expect((await standing()).spec_version_id).toBe(first);
+
+    const strict = specBodySchema.parse({
+      rules: [
+        {
+          id: 'true-peak',
+          kind: 'limits',
+          metric: 'truePeakDbtp',
+          atLeast: null,
+          atMost: -20,
+          breach: 'reject',
+        },
+      ],
+    });
+    const planned = { specId, body: strict, inForceFrom: new Date(Date.now() + 3_600_000) };
+    const { id: later } = await makeSpecVersion(db(), organisation, planned);
+    expect(await sweep()).toMatchObject({ rejudged: 0 });
+    expect((await standing()).spec_version_id).toBe(first);
+
+    const { id: now } = await makeSpecVersion(db(), organisation, {
+      ...planned,
+      inForceFrom: new Date(Date.now() - 1000),
+    });
+    expect(await sweep()).toMatchObject({ rejudged: 1 });
+    expect(await standing()).toEqual({ spec_version_id: now, outcome: 'fail' });
+    expect(now).not.toBe(later);
+    expect(await sweep()).toMatchObject({ rejudged: 0 });
   });
 
   it('gives up uploads that nobody went on with for seven days', async () => {
