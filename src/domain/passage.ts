@@ -12,7 +12,12 @@ const momentarySteps = 40;
 const shortTermSteps = 300;
 
 /** Loudness of the window that ends with each value; `null` until the first is full, and where there is no energy. */
-function sliding(energy: ArrayLike<number>, steps: number, weight: number, length: number): (number | null)[] {
+function sliding(
+  energy: ArrayLike<number>,
+  steps: number,
+  weight: number,
+  length: number,
+): (number | null)[] {
   const values = new Array<number | null>(length).fill(null);
   const first = steps / stepsPerValue - 1;
   windowPowers(energy, steps, stepsPerValue).forEach((power, i) => {

@@ -74,14 +74,23 @@ export function whyNotDecide(verdict: VerdictBody, asked: DecisionAsked): Decisi
     asked.decision === 'reject' ? asked.failingRuleIds : asked.waivers.map((waiver) => waiver.ruleId);
   const unknown = ids.find((id) => !known.has(id));
   if (unknown !== undefined)
-    return { code: 'bad_input', message: `The verdict has no rule '${unknown}'. Read it again and choose among its rules.` };
+    return {
+      code: 'bad_input',
+      message: `The verdict has no rule '${unknown}'. Read it again and choose among its rules.`,
+    };
   if (asked.decision === 'reject') return null;
 
   const twice = ids.find((id, at) => ids.indexOf(id) !== at);
   if (twice !== undefined)
-    return { code: 'bad_input', message: `${known.get(twice)?.name} is waived twice. Give one reason for it.` };
+    return {
+      code: 'bad_input',
+      message: `${known.get(twice)?.name} is waived twice. Give one reason for it.`,
+    };
   if (failing.length === 0)
-    return { code: 'conflict', message: 'No rule fails here, so there is nothing to waive. Approve it as it is.' };
+    return {
+      code: 'conflict',
+      message: 'No rule fails here, so there is nothing to waive. Approve it as it is.',
+    };
   const standing = ids.flatMap((id) => known.get(id) ?? []).filter((rule) => rule.outcome !== 'fail');
   if (standing.length > 0)
     return {

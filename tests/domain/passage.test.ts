@@ -19,7 +19,9 @@ describe('the passage of a series', () => {
   it('agrees with a direct sum over every window, whatever the series', () => {
     fc.assert(
       fc.property(
-        fc.array(fc.oneof(fc.constant(0), fc.double({ min: 1e-12, max: 4, noNaN: true })), { maxLength: 700 }),
+        fc.array(fc.oneof(fc.constant(0), fc.double({ min: 1e-12, max: 4, noNaN: true })), {
+          maxLength: 700,
+        }),
         (energy) => {
           const passage = passageOf(series(energy));
           expect(passage.shortTermLufs).toHaveLength(Math.ceil(energy.length / 10));
@@ -74,11 +76,21 @@ describe('the passage of a series', () => {
 
   it('has no peak value in digital silence, and nothing at all of an empty series', () => {
     expect(passageOf(series([0, 0], [0, 0])).truePeakDbtp).toEqual([null]);
-    expect(passageOf(series([]))).toEqual({ stepSeconds: 0.1, shortTermLufs: [], momentaryLufs: [], truePeakDbtp: [] });
+    expect(passageOf(series([]))).toEqual({
+      stepSeconds: 0.1,
+      shortTermLufs: [],
+      momentaryLufs: [],
+      truePeakDbtp: [],
+    });
   });
 
   it('goes over the wire in hundredths, with what is missing still missing', () => {
-    const rounded = roundedCurves({ stepSeconds: 0.1, shortTermLufs: [null, -23.0049], momentaryLufs: [-18.996, null], truePeakDbtp: [-1.005] });
+    const rounded = roundedCurves({
+      stepSeconds: 0.1,
+      shortTermLufs: [null, -23.0049],
+      momentaryLufs: [-18.996, null],
+      truePeakDbtp: [-1.005],
+    });
     expect(rounded).toMatchObject({ shortTermLufs: [null, -23], momentaryLufs: [-19, null] });
   });
 });

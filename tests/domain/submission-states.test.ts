@@ -99,13 +99,34 @@ describe('a decision against a verdict', () => {
   });
 
   it.each([
-    ['a failing rule left out', failing, ['integrated'], 'conflict', /Maximum true peak fails too and is not waived/],
-    ['a rule that does not fail', failing, ['integrated', 'true-peak', 'range'], 'bad_input', /Loudness range does not fail/],
+    [
+      'a failing rule left out',
+      failing,
+      ['integrated'],
+      'conflict',
+      /Maximum true peak fails too and is not waived/,
+    ],
+    [
+      'a rule that does not fail',
+      failing,
+      ['integrated', 'true-peak', 'range'],
+      'bad_input',
+      /Loudness range does not fail/,
+    ],
     ['a rule that is not there', failing, ['colour'], 'bad_input', /no rule 'colour'/],
-    ['a rule waived twice', failing, ['integrated', 'integrated', 'true-peak'], 'bad_input', /Integrated loudness is waived twice/],
+    [
+      'a rule waived twice',
+      failing,
+      ['integrated', 'integrated', 'true-peak'],
+      'bad_input',
+      /Integrated loudness is waived twice/,
+    ],
     ['nothing that fails', passing, ['integrated'], 'conflict', /nothing to waive/],
   ] as const)('refuses a waiver with %s', (_what, body, ids, code, message) => {
-    const fault = whyNotDecide(body, { decision: 'approve_with_waiver', waivers: ids.map((ruleId) => ({ ruleId })) });
+    const fault = whyNotDecide(body, {
+      decision: 'approve_with_waiver',
+      waivers: ids.map((ruleId) => ({ ruleId })),
+    });
     expect(fault).toMatchObject({ code });
     expect(fault?.message).toMatch(message);
   });

@@ -4,7 +4,12 @@ import { z } from 'zod';
 import type { deliverableQuerySchema, ChannelVerdict } from '../../domain/api/deliverables.ts';
 import { figuresSchema, findingSchema, formatSchema } from '../../domain/api/deliverables.ts';
 import { verdictBodySchema } from '../../domain/verdict.ts';
-import type { ContentKind, DeliverableState, OverallOutcome, SubmissionState } from '../../domain/vocabulary.ts';
+import type {
+  ContentKind,
+  DeliverableState,
+  OverallOutcome,
+  SubmissionState,
+} from '../../domain/vocabulary.ts';
 import type { Scope } from '../scope.ts';
 import type { Db } from './connection.ts';
 import { containing, cutPage, naturalKey, pageByKey, type Cursor, type SortKey } from './keyset.ts';
@@ -149,7 +154,9 @@ const filtered =
   (query: Knex.QueryBuilder): void => {
     const { q, programme, channelId, kind, outcomes, notJudged, states, submissionStates } = filter;
     for (const word of q?.split(/\s+/).filter(Boolean).slice(0, 12) ?? [])
-      query.whereRaw(`concat_ws(' ', p.title, e.label, d.version_label, d.file_name) ILIKE ?`, [containing(word)]);
+      query.whereRaw(`concat_ws(' ', p.title, e.label, d.version_label, d.file_name) ILIKE ?`, [
+        containing(word),
+      ]);
     if (programme) query.whereRaw('lower(p.title) = lower(?)', [programme]);
     if (kind) query.where('d.content_kind', kind);
     if (channelId)
@@ -228,7 +235,10 @@ const toDeliverable = (row: WholeRow): DeliverableRecord => ({
   measurement: isMeasured(row) ? toMeasurement(row) : null,
   sha256: row.sha256,
   uploadedBy: { id: row.uploaded_by, name: row.uploader_name },
-  replaces: row.replaces_id && row.replaces_file_name ? { id: row.replaces_id, fileName: row.replaces_file_name } : null,
+  replaces:
+    row.replaces_id && row.replaces_file_name
+      ? { id: row.replaces_id, fileName: row.replaces_file_name }
+      : null,
   createdAt: row.created_at,
   measuredAt: row.measured_at,
 });
@@ -238,7 +248,12 @@ export async function listDeliverables(
   db: Db,
   scope: Scope,
   filter: DeliverableFilter,
-  page: { sort: keyof typeof deliverableSortKeys; order: 'asc' | 'desc'; limit: number; cursor: Cursor | null },
+  page: {
+    sort: keyof typeof deliverableSortKeys;
+    order: 'asc' | 'desc';
+    limit: number;
+    cursor: Cursor | null;
+  },
 ): Promise<{ records: DeliverableRecord[]; nextCursor: string | null }> {
   const query = wholeRows(db, scope).modify(filtered(filter));
   pageByKey(db, query, deliverableSortKeys[page.sort], { ...page, idColumn: 'd.id' });
@@ -248,12 +263,19 @@ export async function listDeliverables(
 }
 
 export async function countDeliverables(db: Db, scope: Scope, filter: DeliverableFilter): Promise<number> {
-  const row = await deliverables(db, scope).modify(filtered(filter)).count<{ count: number }[]>('* as count').first();
+  const row = await deliverables(db, scope)
+    .modify(filtered(filter))
+    .count<{ count: number }[]>('* as count')
+    .first();
   return row?.count ?? 0;
 }
 
 /** These deliverables of the organisation, in any order; those that it has not are left out. */
-export async function readDeliverables(db: Db, scope: Scope, ids: readonly string[]): Promise<DeliverableRecord[]> {
+export async function readDeliverables(
+  db: Db,
+  scope: Scope,
+  ids: readonly string[],
+): Promise<DeliverableRecord[]> {
   const rows: WholeRow[] = await wholeRows(db, scope).whereIn('d.id', ids as string[]);
   return rows.map(toDeliverable);
 }

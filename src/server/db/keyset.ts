@@ -10,15 +10,23 @@ export interface SortKey {
   nullable: boolean;
 }
 
-const cursorSchema = z.object({ s: z.string(), o: z.enum(['asc', 'desc']), k: z.string().nullable(), id: z.uuid() });
+const cursorSchema = z.object({
+  s: z.string(),
+  o: z.enum(['asc', 'desc']),
+  k: z.string().nullable(),
+  id: z.uuid(),
+});
 export type Cursor = z.infer<typeof cursorSchema>;
 
 /** An opaque text that names sort, order and the last row. */
-export const writeCursor = (cursor: Cursor): string => Buffer.from(JSON.stringify(cursor)).toString('base64url');
+export const writeCursor = (cursor: Cursor): string =>
+  Buffer.from(JSON.stringify(cursor)).toString('base64url');
 
 /** Keys as PostgreSQL writes them: what it could not read back is no cursor of ours. */
 const readable: Record<SortKey['type'], (key: string) => boolean> = {
-  timestamptz: (key) => /^\d{4}-\d\d-\d\d \d\d:\d\d:\d\d(\.\d{1,6})?[+-]\d\d(:\d\d)?$/.test(key) && !Number.isNaN(Date.parse(key)),
+  timestamptz: (key) =>
+    /^\d{4}-\d\d-\d\d \d\d:\d\d:\d\d(\.\d{1,6})?[+-]\d\d(:\d\d)?$/.test(key) &&
+    !Number.isNaN(Date.parse(key)),
   text: (key) => !key.includes('\u0000'),
   float8: (key) => key.trim() !== '' && Number.isFinite(Number(key)),
 };
@@ -70,7 +78,10 @@ export function cutPage<R extends { id: string; sort_key: string | null }>(
   if (rows.length <= page.limit) return { rows, nextCursor: null };
   const kept = rows.slice(0, page.limit);
   const last = kept[kept.length - 1];
-  return { rows: kept, nextCursor: writeCursor({ s: page.sort, o: page.order, k: last.sort_key, id: last.id }) };
+  return {
+    rows: kept,
+    nextCursor: writeCursor({ s: page.sort, o: page.order, k: last.sort_key, id: last.id }),
+  };
 }
 
 /** A pattern for ILIKE that finds the text anywhere and takes none of it as a wildcard. */

@@ -5,7 +5,12 @@ import { figuresSchema } from '../../domain/api/deliverables.ts';
 import type { z } from 'zod';
 import type { Scope } from '../scope.ts';
 import type { Db } from './connection.ts';
-import { measurementColumns, toMeasurement, type MeasurementColumns, type MeasurementRecord } from './deliverables-repository.ts';
+import {
+  measurementColumns,
+  toMeasurement,
+  type MeasurementColumns,
+  type MeasurementRecord,
+} from './deliverables-repository.ts';
 import { ofEitherSide, type PersonRef } from './submissions-repository.ts';
 
 /** Measurement, spec and file that a submission froze together. */
@@ -16,16 +21,19 @@ export interface SubmissionFreeze {
   fileName: string;
 }
 
-export async function findSubmissionFreeze(db: Db, scope: Scope, id: string): Promise<SubmissionFreeze | null> {
-  const row: (MeasurementColumns & { body: unknown; storage_key: string; file_name: string }) | undefined = await db(
-    'submissions as s',
-  )
-    .join('measurements as m', 'm.id', 's.measurement_id')
-    .join('spec_versions as sv', 'sv.id', 's.spec_version_id')
-    .join('deliverables as d', 'd.id', 's.deliverable_id')
-    .where('s.id', id)
-    .modify(ofEitherSide(scope))
-    .first(...measurementColumns, 'sv.body', 'd.storage_key', 'd.file_name');
+export async function findSubmissionFreeze(
+  db: Db,
+  scope: Scope,
+  id: string,
+): Promise<SubmissionFreeze | null> {
+  const row: (MeasurementColumns & { body: unknown; storage_key: string; file_name: string }) | undefined =
+    await db('submissions as s')
+      .join('measurements as m', 'm.id', 's.measurement_id')
+      .join('spec_versions as sv', 'sv.id', 's.spec_version_id')
+      .join('deliverables as d', 'd.id', 's.deliverable_id')
+      .where('s.id', id)
+      .modify(ofEitherSide(scope))
+      .first(...measurementColumns, 'sv.body', 'd.storage_key', 'd.file_name');
   if (!row) return null;
   return {
     measurement: toMeasurement(row),
@@ -62,7 +70,15 @@ export async function listNotes(db: Db, scope: Scope, submissionId: string): Pro
     .where('n.submission_id', submissionId)
     .modify(ofEitherSide(scope))
     .orderBy(['n.created_at', 'n.id'])
-    .select('n.id', 'n.author_id', 'u.name as author_name', 'o.name as organisation_name', 'n.at_seconds', 'n.text', 'n.created_at');
+    .select(
+      'n.id',
+      'n.author_id',
+      'u.name as author_name',
+      'o.name as organisation_name',
+      'n.at_seconds',
+      'n.text',
+      'n.created_at',
+    );
   return rows.map((row) => ({
     id: row.id,
     author: { id: row.author_id, name: row.author_name },
@@ -81,15 +97,14 @@ export interface WaiverRecord {
 }
 
 export async function listWaivers(db: Db, scope: Scope, submissionId: string): Promise<WaiverRecord[]> {
-  const rows: { rule_id: string; reason: string; waived_by: string; name: string; created_at: Date }[] = await db(
-    'waivers as w',
-  )
-    .join('submissions as s', 's.id', 'w.submission_id')
-    .join('users as u', 'u.id', 'w.waived_by')
-    .where('w.submission_id', submissionId)
-    .modify(ofEitherSide(scope))
-    .orderBy('w.rule_id')
-    .select('w.rule_id', 'w.reason', 'w.waived_by', 'u.name', 'w.created_at');
+  const rows: { rule_id: string; reason: string; waived_by: string; name: string; created_at: Date }[] =
+    await db('waivers as w')
+      .join('submissions as s', 's.id', 'w.submission_id')
+      .join('users as u', 'u.id', 'w.waived_by')
+      .where('w.submission_id', submissionId)
+      .modify(ofEitherSide(scope))
+      .orderBy('w.rule_id')
+      .select('w.rule_id', 'w.reason', 'w.waived_by', 'u.name', 'w.created_at');
   return rows.map((row) => ({
     ruleId: row.rule_id,
     reason: row.reason,
@@ -103,17 +118,26 @@ export async function findReplacedFigures(
   db: Db,
   scope: Scope,
   submissionId: string,
-): Promise<{ id: string; submittedAt: Date; figures: z.infer<typeof figuresSchema>; outcome: OverallOutcome } | null> {
-  const row: { id: string; submitted_at: Date; figures: unknown; outcome: OverallOutcome } | undefined = await db(
-    'submissions as s',
-  )
-    .join('measurements as m', 'm.id', 's.measurement_id')
-    .join('verdicts as v', 'v.id', 's.verdict_id')
-    .where('s.id', submissionId)
-    .modify(ofEitherSide(scope))
-    .first('s.id', 's.submitted_at', 'm.figures', 'v.outcome');
+): Promise<{
+  id: string;
+  submittedAt: Date;
+  figures: z.infer<typeof figuresSchema>;
+  outcome: OverallOutcome;
+} | null> {
+  const row: { id: string; submitted_at: Date; figures: unknown; outcome: OverallOutcome } | undefined =
+    await db('submissions as s')
+      .join('measurements as m', 'm.id', 's.measurement_id')
+      .join('verdicts as v', 'v.id', 's.verdict_id')
+      .where('s.id', submissionId)
+      .modify(ofEitherSide(scope))
+      .first('s.id', 's.submitted_at', 'm.figures', 'v.outcome');
   return row
-    ? { id: row.id, submittedAt: row.submitted_at, figures: figuresSchema.parse(row.figures), outcome: row.outcome }
+    ? {
+        id: row.id,
+        submittedAt: row.submitted_at,
+        figures: figuresSchema.parse(row.figures),
+        outcome: row.outcome,
+      }
     : null;
 }
 
@@ -123,7 +147,8 @@ export async function findLastAct(
   scope: Scope,
   submissionId: string,
 ): Promise<{ action: string; actorName: string | null; organisationName: string; at: Date } | null> {
-  const row: { action: string; actor_name: string | null; organisation_name: string; created_at: Date } | undefined =
+  const row:
+    { action: string; actor_name: string | null; organisation_name: string; created_at: Date } | undefined =
     await db('audit_events as a')
       .join('submissions as s', (on) => on.on(db.raw('s.id::text = a.subject_id')))
       .join('organisations as o', 'o.id', 'a.organisation_id')
@@ -143,6 +168,11 @@ export async function findLastAct(
       .orderBy('a.id', 'desc')
       .first('a.action', 'u.name as actor_name', 'o.name as organisation_name', 'a.created_at');
   return row
-    ? { action: row.action, actorName: row.actor_name, organisationName: row.organisation_name, at: row.created_at }
+    ? {
+        action: row.action,
+        actorName: row.actor_name,
+        organisationName: row.organisation_name,
+        at: row.created_at,
+      }
     : null;
 }

@@ -22,7 +22,11 @@ export interface LockedDeliverable {
 }
 
 /** A deliverable of the organisation, held until the transaction ends; undefined when it has none of that id. */
-export async function lockDeliverable(db: Db, scope: Scope, id: string): Promise<LockedDeliverable | undefined> {
+export async function lockDeliverable(
+  db: Db,
+  scope: Scope,
+  id: string,
+): Promise<LockedDeliverable | undefined> {
   const row = await db('deliverables as d')
     .leftJoin('programmes as p', 'p.id', 'd.programme_id')
     .leftJoin('episodes as e', 'e.id', 'd.episode_id')
@@ -56,14 +60,21 @@ export async function listSubmissionsOfDeliverable(
   deliverableId: string,
   channelId?: string,
 ): Promise<{ id: string; state: SubmissionState; channelName: string; submittedAt: Date }[]> {
-  const rows: { id: string; state: SubmissionState; name: string; submitted_at: Date }[] = await db('submissions as s')
+  const rows: { id: string; state: SubmissionState; name: string; submitted_at: Date }[] = await db(
+    'submissions as s',
+  )
     .join('channels as c', 'c.id', 's.channel_id')
     .where('s.deliverable_id', deliverableId)
     .modify((query) => void (channelId && query.where('s.channel_id', channelId)))
     .modify(within(scope, 's.organisation_id'))
     .orderBy([{ column: 's.submitted_at', order: 'desc' }, 's.id'])
     .select('s.id', 's.state', 'c.name', 's.submitted_at');
-  return rows.map((row) => ({ id: row.id, state: row.state, channelName: row.name, submittedAt: row.submitted_at }));
+  return rows.map((row) => ({
+    id: row.id,
+    state: row.state,
+    channelName: row.name,
+    submittedAt: row.submitted_at,
+  }));
 }
 
 export interface DeliveryChannel {
@@ -85,7 +96,12 @@ export async function findDeliveryChannel(
   const row = await db('channels as c')
     .join('organisations as o', 'o.id', 'c.organisation_id')
     .where('c.id', channelId)
-    .whereExists(db('agreements as a').whereRaw('a.channel_id = c.id').where('a.supplier_id', supplierId).select(db.raw('1')))
+    .whereExists(
+      db('agreements as a')
+        .whereRaw('a.channel_id = c.id')
+        .where('a.supplier_id', supplierId)
+        .select(db.raw('1')),
+    )
     .first(
       'c.id',
       'c.name',
@@ -131,7 +147,14 @@ export async function findVerdictInForce(
     .where({ 'dc.deliverable_id': deliverableId, 'dc.channel_id': channelId })
     .whereRaw('v.spec_version_id = spec_version_in_force(dc.channel_id, d.content_kind, now())')
     .modify(within(scope, 'dc.organisation_id'))
-    .first('v.id', 'v.body', 'v.measurement_id', 'v.spec_version_id', 'm.sha256', db.raw(`m.format ->> 'layout' AS layout`));
+    .first(
+      'v.id',
+      'v.body',
+      'v.measurement_id',
+      'v.spec_version_id',
+      'm.sha256',
+      db.raw(`m.format ->> 'layout' AS layout`),
+    );
   return (
     row && {
       verdictId: row.id,
@@ -146,7 +169,11 @@ export async function findVerdictInForce(
 
 /** Holds an episode, so that two deliveries of it are chained one after the other. */
 export async function lockEpisode(db: Db, scope: Scope, episodeId: string): Promise<void> {
-  await db('episodes').where('id', episodeId).modify(within(scope, 'organisation_id')).forUpdate().first('id');
+  await db('episodes')
+    .where('id', episodeId)
+    .modify(within(scope, 'organisation_id'))
+    .forUpdate()
+    .first('id');
 }
 
 export interface EarlierSubmission {
@@ -219,7 +246,12 @@ export async function listEarlierSubmissions(
   }));
 }
 
-export async function setReplaces(db: Db, scope: Scope, deliverableId: string, replacesId: string): Promise<void> {
+export async function setReplaces(
+  db: Db,
+  scope: Scope,
+  deliverableId: string,
+  replacesId: string,
+): Promise<void> {
   await db('deliverables')
     .where('id', deliverableId)
     .modify(within(scope, 'organisation_id'))
@@ -261,7 +293,11 @@ export async function insertSubmission(db: Db, _scope: Scope, made: NewSubmissio
 
 /** Holds a submission of either side until the transaction ends; false when the scope has none of that id. */
 export async function lockSubmission(db: Db, scope: Scope, id: string): Promise<boolean> {
-  const row = await db('submissions as s').where('s.id', id).modify(ofEitherSide(scope)).forUpdate('s').first('s.id');
+  const row = await db('submissions as s')
+    .where('s.id', id)
+    .modify(ofEitherSide(scope))
+    .forUpdate('s')
+    .first('s.id');
   return row !== undefined;
 }
 
@@ -324,7 +360,13 @@ export async function deleteWaivers(db: Db, scope: Scope, submissionId: string):
 export async function insertNote(
   db: Db,
   _scope: Scope,
-  note: { organisationId: string; submissionId: string; authorId: string; atSeconds: number | null; text: string },
+  note: {
+    organisationId: string;
+    submissionId: string;
+    authorId: string;
+    atSeconds: number | null;
+    text: string;
+  },
 ): Promise<string> {
   const [row] = await db('notes')
     .insert({
@@ -340,12 +382,20 @@ export async function insertNote(
 
 /** Whether a later delivery was chained to this one. */
 export async function hasSuccessor(db: Db, scope: Scope, submissionId: string): Promise<boolean> {
-  const row = await db('submissions as s').where('s.replaces_id', submissionId).modify(ofEitherSide(scope)).first('s.id');
+  const row = await db('submissions as s')
+    .where('s.replaces_id', submissionId)
+    .modify(ofEitherSide(scope))
+    .first('s.id');
   return row !== undefined;
 }
 
 /** Whether a mail about the decision made at `since` has gone out (it was to wait beyond that; older ones were cancelled). */
-export async function decisionMailHasGone(db: Db, scope: Scope, submissionId: string, since: Date): Promise<boolean> {
+export async function decisionMailHasGone(
+  db: Db,
+  scope: Scope,
+  submissionId: string,
+  since: Date,
+): Promise<boolean> {
   const row = await db('mail_outbox as o')
     .join('submissions as s', 's.id', 'o.submission_id')
     .where({ 's.id': submissionId, 'o.state': 'sent' })

@@ -123,7 +123,9 @@ export const ofEitherSide =
   (query: Knex.QueryBuilder): void => {
     if (scope.kind !== 'member') return;
     const { organisationId } = scope;
-    query.where((side) => side.where('s.organisation_id', organisationId).orWhere('s.distributor_id', organisationId));
+    query.where((side) =>
+      side.where('s.organisation_id', organisationId).orWhere('s.distributor_id', organisationId),
+    );
   };
 
 const figure = (path: string) => `(m.figures #>> '{${path}}')::float8`;
@@ -162,9 +164,10 @@ const filtered =
   ({ q, states, outcomes, channelId, supplierId }: SubmissionFilter) =>
   (query: Knex.QueryBuilder): void => {
     for (const word of q?.split(/\s+/).filter(Boolean).slice(0, 12) ?? [])
-      query.whereRaw(`concat_ws(' ', p.title, e.label, d.version_label, d.file_name, su.name, c.name) ILIKE ?`, [
-        containing(word),
-      ]);
+      query.whereRaw(
+        `concat_ws(' ', p.title, e.label, d.version_label, d.file_name, su.name, c.name) ILIKE ?`,
+        [containing(word)],
+      );
     if (states) query.whereIn('s.state', states as SubmissionState[]);
     if (outcomes) query.whereIn('v.outcome', outcomes as OverallOutcome[]);
     if (channelId) query.where('s.channel_id', channelId);
@@ -222,7 +225,12 @@ export async function listSubmissions(
   db: Db,
   scope: Scope,
   filter: SubmissionFilter,
-  page: { sort: keyof typeof submissionSortKeys; order: 'asc' | 'desc'; limit: number; cursor: Cursor | null },
+  page: {
+    sort: keyof typeof submissionSortKeys;
+    order: 'asc' | 'desc';
+    limit: number;
+    cursor: Cursor | null;
+  },
 ): Promise<{ records: SubmissionRecord[]; nextCursor: string | null }> {
   const query = wholeRows(db, scope).modify(filtered(filter));
   pageByKey(db, query, submissionSortKeys[page.sort], { ...page, idColumn: 's.id' });
@@ -249,7 +257,17 @@ export async function countSubmissions(
   return { total: row?.total ?? 0, awaiting: row?.awaiting ?? 0, airingWithin24h: row?.airing ?? 0 };
 }
 
+/** These submissions, in any order; those that the organisation is no side of are left out. */
+export async function readSubmissions(
+  db: Db,
+  scope: Scope,
+  ids: readonly string[],
+): Promise<SubmissionRecord[]> {
+  const rows: Row[] = await wholeRows(db, scope).whereIn('s.id', ids as string[]);
+  return rows.map(toSubmission);
+}
+
 export async function findSubmission(db: Db, scope: Scope, id: string): Promise<SubmissionRecord | null> {
-  const row: Row | undefined = await wholeRows(db, scope).where('s.id', id).first();
-  return row ? toSubmission(row) : null;
+  const [record] = await readSubmissions(db, scope, [id]);
+  return record ?? null;
 }

@@ -19,7 +19,7 @@ import { cancelMailAbout, queueMail } from '../mail/outbox.ts';
 import { done, lacking, refuse, type Answer } from '../refusals.ts';
 import type { MemberScope, Scope } from '../scope.ts';
 import { itemResult, type ItemResult } from './item-results.ts';
-import { mailFacts, readSubmissionRow, recordAct, tellBothSides } from './submission-rows.ts';
+import { acted, mailFacts, recordAct, tellAndRead, type Acted } from './submission-rows.ts';
 
 type Decision = z.infer<typeof decisionSchema>;
 
@@ -35,18 +35,27 @@ export async function decideSubmissions(
 ): Promise<Answer<{ items: ItemResult<SubmissionRow>[] }>> {
   const no = lacking(scope, 'submission:decide');
   if (no) return no;
-  const results: ItemResult<SubmissionRow>[] = [];
-  for (const decision of items) results.push(itemResult(decision.id, await decideOne(scope, decision)));
-  return done({ items: results });
+  const answers: Answer<Acted>[] = [];
+  for (const decision of items) answers.push(await decideOne(scope, decision));
+  const rowOf = await tellAndRead(
+    scope,
+    answers.flatMap((answer) => (answer.ok ? [answer.value] : [])),
+  );
+  return done({
+    items: answers.map((answer, i) =>
+      itemResult(items[i].id, answer.ok ? done(rowOf(answer.value.id)) : answer),
+    ),
+  });
 }
 
-async function decideOne(scope: MemberScope, decision: Decision): Promise<Answer<SubmissionRow>> {
-  const answer = await inTransaction(async (trx) => {
+async function decideOne(scope: MemberScope, decision: Decision): Promise<Answer<Acted>> {
+  return inTransaction(async (trx) => {
     const held = await holdForDeciding(trx, scope, decision.id);
     if (!held.ok) return held;
     const record = held.value;
     const to = stateAfter(record.state, decision.decision);
-    if (!to || record.version !== decision.version) return refuse('conflict', await whatHappened(trx, scope, record));
+    if (!to || record.version !== decision.version)
+      return refuse('conflict', await whatHappened(trx, scope, record));
     if (record.uploadedBy === scope.userId)
       return refuse('forbidden', 'You uploaded this file yourself, so somebody else decides on it.');
     const fault = whyNotDecide(record.verdict, decision);
@@ -65,9 +74,8 @@ async function decideOne(scope: MemberScope, decision: Decision): Promise<Answer
       ...(rejecting && { reason: rejecting.reason, failingRuleIds: rejecting.failingRuleIds }),
       ...(waivers.length > 0 && { waivers }),
     });
-    return done({ record, state: to, version: moved.version });
+    return done(acted(record, to, moved.version));
   });
-  return answer.ok ? finish(scope, answer.value) : answer;
 }
 
 /** Puts a decision back to awaiting review while its mail has not gone. Any of the distributor's QC operators may. */
@@ -87,27 +95,22 @@ export async function takeBackDecision(scope: MemberScope, id: string): Promise<
     );
     if (takeBackDeadline(record.decidedAt, UNDO_SECONDS) <= new Date()) return tooLate;
     if (await hasSuccessor(trx, scope, id))
-      return refuse('conflict', 'It has been delivered anew since. Decide on the new delivery; this decision stands.');
+      return refuse(
+        'conflict',
+        'It has been delivered anew since. Decide on the new delivery; this decision stands.',
+      );
     await cancelMailAbout(trx, id, ['submission_approved', 'submission_rejected']);
     // Cancelling waits for a mail that is just being sent: only now is it known whether one has gone.
     if (await decisionMailHasGone(trx, scope, id, record.decidedAt)) return tooLate;
     await deleteWaivers(trx, scope, id);
     const { version } = await moveSubmission(trx, scope, id, to, 'undecided');
-    await recordAct(trx, scope, record, 'taken_back', { was: record.state, decidedBy: record.decidedBy?.name });
-    return done({ record, state: to, version });
+    await recordAct(trx, scope, record, 'taken_back', {
+      was: record.state,
+      decidedBy: record.decidedBy?.name,
+    });
+    return done(acted(record, to, version));
   });
-  return answer.ok ? finish(scope, answer.value) : answer;
-}
-
-async function finish(
-  scope: MemberScope,
-  { record, state, version }: { record: SubmissionRecord; state: SubmissionRecord['state']; version: number },
-): Promise<Answer<SubmissionRow>> {
-  await tellBothSides(
-    { supplierId: record.supplier.id, distributorId: record.distributor.id },
-    { id: record.id, state, version },
-  );
-  return done(await readSubmissionRow(scope, record.id));
+  return answer.ok ? done((await tellAndRead(scope, [answer.value]))(id)) : answer;
 }
 
 /** The submission, held until the transaction ends; refused to everybody but its distributor. */
@@ -179,7 +182,8 @@ async function mailSupplier(
       });
     } else {
       const waived = decision.decision === 'approve_with_waiver' ? decision.waivers : [];
-      const nameOf = (ruleId: string) => record.verdict.rules.find((rule) => rule.ruleId === ruleId)?.name ?? ruleId;
+      const nameOf = (ruleId: string) =>
+        record.verdict.rules.find((rule) => rule.ruleId === ruleId)?.name ?? ruleId;
       const waivers = waived.map(({ ruleId, reason }) => ({ ruleName: nameOf(ruleId), reason }));
       await queueMail(trx, { ...common, to, kind: 'submission_approved', model: { ...facts, waivers } });
     }

@@ -159,7 +159,7 @@ export async function patchDeliverables(
 ): Promise<Answer<{ items: ItemResult<DeliverableRow>[] }>> {
   const no = lacking(scope, 'deliverable:upload');
   if (no) return no;
-  const results: ItemResult<DeliverableRow>[] = [];
+  const answers: Answer<null>[] = [];
   for (const { id, ...details } of items) {
     const answer = await inTransaction(async (trx) => {
       if (!(await lockDeliverable(trx, scope, id))) return noDeliverable;
@@ -176,13 +176,22 @@ export async function patchDeliverables(
       });
       return done(null);
     });
-    const row = answer.ok ? await readDeliverableRow(scope, id) : answer;
-    results.push(itemResult(id, row));
-    if (!row.ok) continue;
-    const { state, progress } = row.value;
-    await publishEvent(redis(), [scope.organisationId], { kind: 'deliverable', id, state, progress });
+    answers.push(answer);
   }
-  return done({ items: results });
+  const changed = [...new Set(items.filter((_, i) => answers[i].ok).map(({ id }) => id))];
+  const rows = changed.length > 0 ? await toRows(scope, await readDeliverables(db(), scope, changed)) : [];
+  await Promise.all(
+    rows.map(({ id, state, progress }) =>
+      publishEvent(redis(), [scope.organisationId], { kind: 'deliverable', id, state, progress }),
+    ),
+  );
+  return done({
+    items: items.map(({ id }, i) => {
+      const row = rows.find((one) => one.id === id);
+      // Gone again in between: discarded by a colleague.
+      return itemResult(id, !answers[i].ok ? answers[i] : row ? done(row) : noDeliverable);
+    }),
+  });
 }
 
 /** Takes a deliverable out of every list. What was ever submitted stays, for the other side has seen it. */
@@ -196,19 +205,31 @@ export async function discardDeliverable(scope: MemberScope, id: string): Promis
       return refuse('conflict', 'This file is still being uploaded. Give the upload up instead.');
     const [submitted] = await listSubmissionsOfDeliverable(trx, scope, id);
     if (submitted)
-      return refuse('conflict', `It was submitted to ${submitted.channelName}, so it stays where both sides can read it.`);
+      return refuse(
+        'conflict',
+        `It was submitted to ${submitted.channelName}, so it stays where both sides can read it.`,
+      );
     await markDiscarded(trx, scope, id);
     await recordEvent(trx, scope, {
       organisationId: scope.organisationId,
       action: 'deliverable.discarded',
       subjectKind: 'deliverable',
       subjectId: id,
-      detail: { fileName: deliverable.fileName, programmeTitle: deliverable.programmeTitle, episodeLabel: deliverable.episodeLabel },
+      detail: {
+        fileName: deliverable.fileName,
+        programmeTitle: deliverable.programmeTitle,
+        episodeLabel: deliverable.episodeLabel,
+      },
     });
     return done({ id });
   });
   if (answer.ok)
-    await publishEvent(redis(), [scope.organisationId], { kind: 'deliverable', id, state: 'discarded', progress: null });
+    await publishEvent(redis(), [scope.organisationId], {
+      kind: 'deliverable',
+      id,
+      state: 'discarded',
+      progress: null,
+    });
   return answer;
 }
 

@@ -8,7 +8,11 @@ export function listedWords<T extends string>(
   known: readonly T[],
   field: string,
 ): Answer<T[] | undefined> {
-  const words = text?.split(',').map((word) => word.trim()).filter(Boolean) ?? [];
+  const words =
+    text
+      ?.split(',')
+      .map((word) => word.trim())
+      .filter(Boolean) ?? [];
   const isKnown = (word: string): word is T => (known as readonly string[]).includes(word);
   const odd = words.find((word) => !isKnown(word));
   if (odd !== undefined) {

@@ -15,7 +15,10 @@ import { getObject, ObjectMissing, presignedGet, StorageTrouble } from '../stora
 
 const noDeliverable = refuse('not_found', 'There is no such deliverable.');
 const noSubmission = refuse('not_found', 'There is no such submission.');
-const notArrived = refuse('conflict', 'This file is still being uploaded. It can be played once it has arrived whole.');
+const notArrived = refuse(
+  'conflict',
+  'This file is still being uploaded. It can be played once it has arrived whole.',
+);
 
 /**
  * Loudness over time of a deliverable. Excursions are those beyond the limits of `specVersionId`, which must be one that
@@ -54,11 +57,17 @@ async function passageUnder(measurement: MeasurementRecord, body: SpecBody | nul
   } catch (error) {
     if (error instanceof ObjectMissing) {
       log.error({ err: error, measurementId: measurement.id }, 'a measurement has lost its series');
-      return refuse('gone', 'The curve of this measurement is not in storage any more. Its figures and verdicts stand.');
+      return refuse(
+        'gone',
+        'The curve of this measurement is not in storage any more. Its figures and verdicts stand.',
+      );
     }
     if (!(error instanceof StorageTrouble)) throw error;
     log.warn({ err: error }, 'storage is away');
-    return refuse('unavailable', 'Storage does not answer at the moment. The figures stand; try the curve again in a minute.');
+    return refuse(
+      'unavailable',
+      'Storage does not answer at the moment. The figures stand; try the curve again in a minute.',
+    );
   }
   // One audio channel that the spec judges as two is drawn as it is judged.
   const weight = body?.mono === 'asDual' && measurement.format.channels === 1 ? 2 : 1;

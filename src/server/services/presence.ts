@@ -19,7 +19,9 @@ function presentIn(hash: Record<string, string>, now: number): PersonRef[] {
   return Object.entries(hash)
     .flatMap(([id, text]) => {
       const entry = entrySchema.safeParse(JSON.parse(text));
-      return entry.success && now - entry.data.at < presentForSeconds * 1000 ? [{ id, name: entry.data.name }] : [];
+      return entry.success && now - entry.data.at < presentForSeconds * 1000
+        ? [{ id, name: entry.data.name }]
+        : [];
     })
     .sort((a, b) => a.name.localeCompare(b.name, 'en'));
 }
@@ -52,14 +54,20 @@ export async function tellPresence(
     openBy = presentIn(hash, now);
   } catch (error) {
     log.warn({ err: error, submissionId }, 'presence was not kept');
-    return refuse('unavailable', 'Who else has this open cannot be told at the moment. Deciding works all the same.');
+    return refuse(
+      'unavailable',
+      'Who else has this open cannot be told at the moment. Deciding works all the same.',
+    );
   }
   await publishEvent(redis(), [scope.organisationId], { kind: 'presence', submissionId, openBy });
   return done({ openBy: openBy.filter((person) => person.id !== scope.userId) });
 }
 
 /** Who has these open, without the caller; by submission id. With Redis away nobody is told, and the log says so. */
-export async function readPresence(scope: Scope, submissionIds: readonly string[]): Promise<Map<string, PersonRef[]>> {
+export async function readPresence(
+  scope: Scope,
+  submissionIds: readonly string[],
+): Promise<Map<string, PersonRef[]>> {
   const present = new Map<string, PersonRef[]>();
   if (submissionIds.length === 0) return present;
   const caller = scope.kind === 'member' ? scope.userId : null;

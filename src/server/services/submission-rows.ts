@@ -1,10 +1,11 @@
 /** Submissions as the API shows them to one caller, and what every service that moves one shares. */
 import type { SubmissionRow } from '../../domain/api/submissions.ts';
 import { isDecided, takeBackDeadline } from '../../domain/submission-states.ts';
+import type { SubmissionState } from '../../domain/vocabulary.ts';
 import { config } from '../config.ts';
 import { recordEvent } from '../db/audit-repository.ts';
 import { db, type Db } from '../db/connection.ts';
-import { findSubmission, type SubmissionRecord } from '../db/submissions-repository.ts';
+import { readSubmissions, type SubmissionRecord } from '../db/submissions-repository.ts';
 import { publishEvent } from '../events.ts';
 import { redis } from '../redis.ts';
 import { mayDo, type Scope } from '../scope.ts';
@@ -12,10 +13,14 @@ import { readPresence } from './presence.ts';
 
 /** Whether the caller is of the side that decides on it, and may. */
 export const mayDecideOn = (scope: Scope, record: SubmissionRecord): boolean =>
-  scope.kind === 'system' || (scope.organisationId === record.distributor.id && mayDo(scope, 'submission:decide'));
+  scope.kind === 'system' ||
+  (scope.organisationId === record.distributor.id && mayDo(scope, 'submission:decide'));
 
 /** Rows for the caller: who else has it open and until when it can be taken back is told to those who decide only. */
-export async function toSubmissionRows(scope: Scope, records: readonly SubmissionRecord[]): Promise<SubmissionRow[]> {
+export async function toSubmissionRows(
+  scope: Scope,
+  records: readonly SubmissionRecord[],
+): Promise<SubmissionRow[]> {
   const decidable = records.filter((record) => mayDecideOn(scope, record));
   const present = await readPresence(
     scope,
@@ -59,11 +64,41 @@ export async function toSubmissionRows(scope: Scope, records: readonly Submissio
   });
 }
 
-/** The row as it is now. Throws when it is not there: the caller has just written it. */
-export async function readSubmissionRow(scope: Scope, id: string): Promise<SubmissionRow> {
-  const record = await findSubmission(db(), scope, id);
-  if (!record) throw new Error(`Submission ${id} was written and not found`);
-  return (await toSubmissionRows(scope, [record]))[0];
+/** What an act has made of a submission. */
+export interface Acted {
+  id: string;
+  state: SubmissionState;
+  version: number;
+  supplierId: string;
+  distributorId: string;
+}
+
+/** What an act has made of a submission that was read before it. */
+export const acted = (record: SubmissionRecord, state: SubmissionState, version: number): Acted => ({
+  id: record.id,
+  state,
+  version,
+  supplierId: record.supplier.id,
+  distributorId: record.distributor.id,
+});
+
+/**
+ * After the commits: tells the open pages of both sides what happened, all at once, and reads the rows as they are now.
+ * Throws when one is not there: the caller has just written it.
+ */
+export async function tellAndRead(
+  scope: Scope,
+  all: readonly Acted[],
+): Promise<(id: string) => SubmissionRow> {
+  await tellBothSides(all);
+  const ids = [...new Set(all.map(({ id }) => id))];
+  const rows = ids.length > 0 ? await toSubmissionRows(scope, await readSubmissions(db(), scope, ids)) : [];
+  const byId = new Map(rows.map((row) => [row.id, row]));
+  return (id) => {
+    const row = byId.get(id);
+    if (!row) throw new Error(`Submission ${id} was written and not found`);
+    return row;
+  };
 }
 
 /** Audit event of an act on a submission, readable by both sides; the caller's side is the one that acts. */
@@ -92,13 +127,13 @@ export async function recordAct(
   });
 }
 
-/** Tells the open pages of both sides, after the commit. */
-export async function tellBothSides(
-  sides: { supplierId: string; distributorId: string },
-  submission: { id: string; state: string; version: number },
-): Promise<void> {
-  const { id, state, version } = submission;
-  await publishEvent(redis(), [sides.supplierId, sides.distributorId], { kind: 'submission', id, state, version });
+/** Tells the open pages of both sides. At once for all: with Redis away each one would wait by itself. */
+export async function tellBothSides(all: readonly Acted[]): Promise<void> {
+  await Promise.all(
+    all.map(({ id, state, version, supplierId, distributorId }) =>
+      publishEvent(redis(), [supplierId, distributorId], { kind: 'submission', id, state, version }),
+    ),
+  );
 }
 
 /** What every mail about a submission names. */

@@ -33,15 +33,21 @@ import { done, lacking, refuse, type Answer } from '../refusals.ts';
 import type { MemberScope, Scope } from '../scope.ts';
 import { itemResult, type ItemResult } from './item-results.ts';
 import { cursorOf, listedWords } from './list-filters.ts';
-import { readSubmissionRow, recordAct, tellBothSides, toSubmissionRows } from './submission-rows.ts';
-import { submitOne } from './submitting.ts';
+import {
+  acted,
+  recordAct,
+  tellAndRead,
+  tellBothSides,
+  toSubmissionRows,
+  type Acted,
+} from './submission-rows.ts';
+import { submitOne, type Submitted } from './submitting.ts';
 
 type Query = z.infer<typeof submissionQuerySchema>;
 type List = z.infer<typeof submissionListSchema>;
 type Note = SubmissionReport['notes'][number];
 
 const noSubmission = refuse('not_found', 'There is no such submission.');
-const sidesOf = (record: SubmissionRecord) => ({ supplierId: record.supplier.id, distributorId: record.distributor.id });
 
 /** A page of the submissions that the caller's organisation is a side of, with counts over the whole filter. */
 export async function listSubmissions(scope: Scope, query: Query): Promise<Answer<List>> {
@@ -78,13 +84,25 @@ export async function createSubmissions(
 ): Promise<Answer<{ items: ItemResult<SubmissionRow>[] }>> {
   const no = lacking(scope, 'submission:create');
   if (no) return no;
-  const results: ItemResult<SubmissionRow>[] = [];
-  for (const item of items) {
-    const id = `${item.deliverableId}/${item.channelId}`;
-    const answer = await submitOne(scope, { ...item, airAt: item.airAt === null ? null : new Date(item.airAt) });
-    results.push(itemResult(id, answer.ok ? done(await readSubmissionRow(scope, answer.value.id)) : answer));
-  }
-  return done({ items: results });
+  const answers: Answer<Submitted>[] = [];
+  for (const item of items)
+    answers.push(
+      await submitOne(scope, { ...item, airAt: item.airAt === null ? null : new Date(item.airAt) }),
+    );
+  const submitted = answers.flatMap((answer) => (answer.ok ? [answer.value] : []));
+  await tellBothSides(submitted.flatMap(({ replaced }) => replaced));
+  const rowOf = await tellAndRead(
+    scope,
+    submitted.map((one) => one.submission),
+  );
+  return done({
+    items: answers.map((answer, i) =>
+      itemResult(
+        `${items[i].deliverableId}/${items[i].channelId}`,
+        answer.ok ? done(rowOf(answer.value.submission.id)) : answer,
+      ),
+    ),
+  });
 }
 
 const toNote = (note: NoteRecord): Note => ({ ...note, createdAt: note.createdAt.toISOString() });
@@ -132,7 +150,7 @@ export async function getSubmissionReport(scope: Scope, id: string): Promise<Ans
 
 /** Takes back what awaits review; the queue loses it, the supplier may submit it again. */
 export async function withdrawSubmission(scope: MemberScope, id: string): Promise<Answer<SubmissionRow>> {
-  const answer = await supplierActs(scope, id, 'submission:withdraw', async (trx, record) => {
+  return supplierActs(scope, id, 'submission:withdraw', async (trx, record) => {
     const to = stateAfter(record.state, 'withdraw');
     if (!to)
       return refuse(
@@ -142,9 +160,8 @@ export async function withdrawSubmission(scope: MemberScope, id: string): Promis
     const { version } = await moveSubmission(trx, scope, id, to);
     await cancelMailAbout(trx, id, ['submission_received']);
     await recordAct(trx, scope, record, 'withdrawn');
-    return done({ record, state: to, version });
+    return done(acted(record, to, version));
   });
-  return answer.ok ? finish(scope, answer.value) : answer;
 }
 
 /** Sets or clears when it airs, while it is awaiting review or approved. */
@@ -153,43 +170,35 @@ export async function setSubmissionAirDate(
   id: string,
   airAt: string | null,
 ): Promise<Answer<SubmissionRow>> {
-  const answer = await supplierActs(scope, id, 'submission:create', async (trx, record) => {
+  return supplierActs(scope, id, 'submission:create', async (trx, record) => {
     if (!['awaiting_review', 'approved', 'approved_with_waiver'].includes(record.state))
-      return refuse('conflict', `It is ${submissionStateNames[record.state].toLowerCase()}; its air date is not changed any more.`);
+      return refuse(
+        'conflict',
+        `It is ${submissionStateNames[record.state].toLowerCase()}; its air date is not changed any more.`,
+      );
     await setAirAt(trx, scope, id, airAt === null ? null : new Date(airAt));
     await recordAct(trx, scope, record, 'air_date_changed', { from: record.airAt, to: airAt });
-    return done({ record, state: record.state, version: record.version });
+    return done(acted(record, record.state, record.version));
   });
-  return answer.ok ? finish(scope, answer.value) : answer;
 }
 
-interface Acted {
-  record: SubmissionRecord;
-  state: SubmissionRecord['state'];
-  version: number;
-}
-
-async function finish(scope: MemberScope, { record, state, version }: Acted): Promise<Answer<SubmissionRow>> {
-  await tellBothSides(sidesOf(record), { id: record.id, state, version });
-  return done(await readSubmissionRow(scope, record.id));
-}
-
-/** Holds a submission of the caller's own organisation and acts on it in one transaction. */
+/** Holds a submission of the caller's own organisation, acts on it in one transaction, then tells and reads. */
 async function supplierActs(
   scope: MemberScope,
   id: string,
   permission: 'submission:withdraw' | 'submission:create',
   act: (trx: Db, record: SubmissionRecord) => Promise<Answer<Acted>>,
-): Promise<Answer<Acted>> {
+): Promise<Answer<SubmissionRow>> {
   const no = lacking(scope, permission);
   if (no) return no;
-  return inTransaction(async (trx) => {
+  const answer = await inTransaction(async (trx) => {
     const record = (await lockSubmission(trx, scope, id)) ? await findSubmission(trx, scope, id) : null;
     if (!record) return noSubmission;
     if (record.supplier.id !== scope.organisationId)
       return refuse('forbidden', `${record.supplier.name} submitted this; only they can change it.`);
     return act(trx, record);
   });
+  return answer.ok ? done((await tellAndRead(scope, [answer.value]))(id)) : answer;
 }
 
 /** Adds a note that both sides read, at a time of the programme where `atSeconds` says so. */
@@ -205,9 +214,13 @@ export async function addNote(
     if (!record) return noSubmission;
     const { durationSeconds } = record.format;
     if (atSeconds !== null && atSeconds > durationSeconds)
-      return refuse('bad_input', `The programme ends at ${durationSeconds.toFixed(3)} s; the note was to stand at ${atSeconds.toFixed(3)} s.`, {
-        atSeconds: 'This is after the end of the programme.',
-      });
+      return refuse(
+        'bad_input',
+        `The programme ends at ${durationSeconds.toFixed(3)} s; the note was to stand at ${atSeconds.toFixed(3)} s.`,
+        {
+          atSeconds: 'This is after the end of the programme.',
+        },
+      );
     const noteId = await insertNote(trx, scope, {
       organisationId: scope.organisationId,
       submissionId: id,
@@ -220,7 +233,7 @@ export async function addNote(
   });
   if (!answer.ok) return answer;
   const { record, noteId } = answer.value;
-  await tellBothSides(sidesOf(record), record);
+  await tellBothSides([acted(record, record.state, record.version)]);
   const note = (await listNotes(db(), scope, id)).find((one) => one.id === noteId);
   if (!note) throw new Error(`Note ${noteId} was written and not found`);
   return done(toNote(note));

@@ -23,7 +23,7 @@ import { cancelMailAbout, queueMail } from '../mail/outbox.ts';
 import { done, refuse, type Answer } from '../refusals.ts';
 import type { MemberScope } from '../scope.ts';
 import { judgeDeliverables } from './judging.ts';
-import { mailFacts, recordAct, tellBothSides } from './submission-rows.ts';
+import { acted, mailFacts, recordAct, type Acted } from './submission-rows.ts';
 
 export interface Submitting {
   deliverableId: string;
@@ -31,12 +31,10 @@ export interface Submitting {
   airAt: Date | null;
 }
 
-interface Submitted {
-  id: string;
-  version: number;
-  supplierId: string;
-  distributorId: string;
-  replaced: { id: string; version: number }[];
+/** A new submission, and the earlier ones that it replaced in the queue. */
+export interface Submitted {
+  submission: Acted;
+  replaced: Acted[];
 }
 
 const notYet: Record<Exclude<DeliverableState, 'measured' | 'unreadable'>, string> = {
@@ -45,17 +43,15 @@ const notYet: Record<Exclude<DeliverableState, 'measured' | 'unreadable'>, strin
   measuring: 'It is being measured. Submit it once that has ended.',
 };
 
-/** Submits, or refuses with a sentence that says what stands in the way. The caller has checked the permission. */
-export async function submitOne(scope: MemberScope, item: Submitting): Promise<Answer<{ id: string }>> {
-  const answer = await inTransaction(async (trx) => {
+/**
+ * Submits in one transaction, or refuses with a sentence that says what stands in the way. The caller has checked the
+ * permission, and tells both sides.
+ */
+export async function submitOne(scope: MemberScope, item: Submitting): Promise<Answer<Submitted>> {
+  return inTransaction(async (trx) => {
     const ready = await whatIsSubmitted(trx, scope, item);
     return ready.ok ? freeze(trx, scope, item, ready.value) : ready;
   });
-  if (!answer.ok) return answer;
-  const { id, version, replaced, ...sides } = answer.value;
-  for (const earlier of replaced) await tellBothSides(sides, { ...earlier, state: 'replaced' });
-  await tellBothSides(sides, { id, state: 'awaiting_review', version });
-  return done({ id });
 }
 
 interface Ready {
@@ -73,14 +69,20 @@ async function whatIsSubmitted(
   const deliverable = await lockDeliverable(trx, scope, deliverableId);
   if (!deliverable) return refuse('not_found', 'There is no such deliverable.');
   const channel = await findDeliveryChannel(trx, scope, scope.organisationId, channelId);
-  if (!channel) return refuse('not_found', 'There is no such channel among those that you have an agreement for.');
+  if (!channel)
+    return refuse('not_found', 'There is no such channel among those that you have an agreement for.');
   if (!channel.open)
-    return refuse('conflict', `Your agreement with ${channel.distributorName} for ${channel.name} has ended, so nothing is delivered to it. Ask them for a new one.`);
+    return refuse(
+      'conflict',
+      `Your agreement with ${channel.distributorName} for ${channel.name} has ended, so nothing is delivered to it. Ask them for a new one.`,
+    );
   if (deliverable.state === 'unreadable')
     return refuse('conflict', `It could not be measured and so is not submitted: ${deliverable.reason}`);
   if (deliverable.state !== 'measured') return refuse('conflict', notYet[deliverable.state]);
 
-  const open = (await listSubmissionsOfDeliverable(trx, scope, deliverableId, channelId)).find(({ state }) => isOpen(state));
+  const open = (await listSubmissionsOfDeliverable(trx, scope, deliverableId, channelId)).find(({ state }) =>
+    isOpen(state),
+  );
   if (open)
     return refuse(
       'conflict',
@@ -93,7 +95,10 @@ async function whatIsSubmitted(
   await judgeDeliverables(trx, scope, { deliverableIds: [deliverableId], channelIds: [channelId] });
   const judged = await findVerdictInForce(trx, scope, deliverableId, channelId);
   if (!judged)
-    return refuse('conflict', `${channel.name} has no delivery spec in force for this kind of content, so there is nothing to hold it against. Ask ${channel.distributorName}, or mend the kind of content.`);
+    return refuse(
+      'conflict',
+      `${channel.name} has no delivery spec in force for this kind of content, so there is nothing to hold it against. Ask ${channel.distributorName}, or mend the kind of content.`,
+    );
   return done({ deliverable, distributorId: channel.distributorId, judged });
 }
 
@@ -114,10 +119,15 @@ async function freeze(
     const { version } = await moveSubmission(trx, scope, id, to);
     await cancelMailAbout(trx, id, ['submission_received']);
     await recordAct(trx, scope, record, 'replaced');
-    replaced.push({ id, version });
+    replaced.push(acted(record, to, version));
   }
   const { newest } = chain;
-  if (newest && !deliverable.replacesId && newest.deliverableId !== deliverable.id && newest.deliverableCreatedAt < deliverable.createdAt)
+  if (
+    newest &&
+    !deliverable.replacesId &&
+    newest.deliverableId !== deliverable.id &&
+    newest.deliverableCreatedAt < deliverable.createdAt
+  )
     await setReplaces(trx, scope, deliverable.id, newest.deliverableId);
 
   const id = await insertSubmission(trx, scope, {
@@ -143,7 +153,7 @@ async function freeze(
     sha256: judged.sha256,
   });
   await mailQcOperators(trx, scope, record);
-  return done({ id, version: record.version, supplierId: record.supplier.id, distributorId, replaced });
+  return done({ submission: acted(record, record.state, record.version), replaced });
 }
 
 /**
@@ -160,7 +170,8 @@ async function earlierDeliveries(
   if (deliverable.episodeId) await lockEpisode(trx, scope, deliverable.episodeId);
   const family = versionFamily(deliverable.versionLabel);
   const chain = (await listEarlierSubmissions(trx, scope, deliverable, channelId)).filter(
-    (earlier) => earlier.named || (earlier.layout === layout && versionFamily(earlier.versionLabel) === family),
+    (earlier) =>
+      earlier.named || (earlier.layout === layout && versionFamily(earlier.versionLabel) === family),
   );
   return {
     newest: chain.find(({ state }) => state !== 'withdrawn') ?? null,

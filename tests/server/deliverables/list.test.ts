@@ -1,6 +1,10 @@
 import { randomUUID } from 'node:crypto';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
-import { deliverableListSchema, deliverableQuerySchema, deliverableSorts } from '../../../src/domain/api/deliverables.ts';
+import {
+  deliverableListSchema,
+  deliverableQuerySchema,
+  deliverableSorts,
+} from '../../../src/domain/api/deliverables.ts';
 import { writeCursor } from '../../../src/server/db/keyset.ts';
 import { clearProgress, setProgress } from '../../../src/server/queue/progress.ts';
 import type { MemberScope } from '../../../src/server/scope.ts';
@@ -30,9 +34,12 @@ afterAll(() => world.close());
 type Given = Partial<Record<keyof typeof deliverableQuerySchema.shape, string | number>>;
 /** The list as the endpoint parses its query, through the schema of the answer. */
 async function list(scope: MemberScope, given: Given = {}) {
-  return deliverableListSchema.parse(valueOf(await listDeliverables(scope, deliverableQuerySchema.parse(given))));
+  return deliverableListSchema.parse(
+    valueOf(await listDeliverables(scope, deliverableQuerySchema.parse(given))),
+  );
 }
-const names = async (scope: MemberScope, given: Given = {}) => (await list(scope, given)).items.map((row) => row.fileName);
+const names = async (scope: MemberScope, given: Given = {}) =>
+  (await list(scope, given)).items.map((row) => row.fileName);
 
 describe('a row of the list', () => {
   it('tells facts, figures, and how it stands with each channel, worst first', async () => {
@@ -47,7 +54,12 @@ describe('a row of the list', () => {
       figures: figures({ integratedLufs: -20.1 }),
     });
     const verdictId = await makeVerdict(db, mixer, made, spec.id, { outcome: 'fail', channelId: channel.id });
-    const submissionId = await makeSubmission(db, mixer, made, { distributor, channel, specVersionId: spec.id, verdictId });
+    const submissionId = await makeSubmission(db, mixer, made, {
+      distributor,
+      channel,
+      specVersionId: spec.id,
+      verdictId,
+    });
 
     const { items, total } = await list(mixer, { q: 'tallow 1.04' });
     expect(total).toBe(1);
@@ -81,7 +93,10 @@ describe('a row of the list', () => {
     const { id } = await makeDeliverable(world.db, mixer, { fileName: 'under way.wav' });
     await world.db('deliverables').where({ id }).update({ state: 'measuring' });
     await setProgress(id, { secondsDone: 12, secondsTotal: 90 });
-    expect((await list(mixer, { q: 'under way' })).items[0].progress).toEqual({ secondsDone: 12, secondsTotal: 90 });
+    expect((await list(mixer, { q: 'under way' })).items[0].progress).toEqual({
+      secondsDone: 12,
+      secondsTotal: 90,
+    });
     await clearProgress(id);
     expect((await list(mixer, { q: 'under way' })).items[0].progress).toBeNull();
   });
@@ -192,7 +207,13 @@ describe('sorting and paging', () => {
   beforeAll(async () => {
     ({ mixer } = await makeChain(world.db));
     for (const [n, level] of levels.entries())
-      await numbered({ figures: figures({ integratedLufs: level, maxDbtp: level, rangeLu: level }), format: { ...stereoFormat, durationSeconds: 20 + (n % 3) } }, n);
+      await numbered(
+        {
+          figures: figures({ integratedLufs: level, maxDbtp: level, rangeLu: level }),
+          format: { ...stereoFormat, durationSeconds: 20 + (n % 3) },
+        },
+        n,
+      );
   });
 
   async function allPages(given: Given, between: () => Promise<unknown> = async () => {}) {
@@ -207,25 +228,37 @@ describe('sorting and paging', () => {
     return seen;
   }
 
-  it.each(deliverableSorts.flatMap((sort) => [{ sort, order: 'asc' }, { sort, order: 'desc' }]))(
-    'gives every row once and in the same order in pages as at once, by %j',
-    async (given) => {
-      const atOnce = await names(mixer, { ...given, limit: 200 });
-      expect(atOnce).toHaveLength(levels.length);
-      expect(await allPages(given)).toEqual(atOnce);
-    },
-  );
+  it.each(
+    deliverableSorts.flatMap((sort) => [
+      { sort, order: 'asc' },
+      { sort, order: 'desc' },
+    ]),
+  )('gives every row once and in the same order in pages as at once, by %j', async (given) => {
+    const atOnce = await names(mixer, { ...given, limit: 200 });
+    expect(atOnce).toHaveLength(levels.length);
+    expect(await allPages(given)).toEqual(atOnce);
+  });
 
   it('puts what has no value last either way', async () => {
     for (const order of ['asc', 'desc']) {
-      const inOrder = (await list(mixer, { sort: 'integrated', order })).items.map((row) => row.figures?.loudness.integratedLufs);
-      const values = levels.filter((level) => level !== null).sort((a, b) => (order === 'asc' ? a - b : b - a));
+      const inOrder = (await list(mixer, { sort: 'integrated', order })).items.map(
+        (row) => row.figures?.loudness.integratedLufs,
+      );
+      const values = levels
+        .filter((level) => level !== null)
+        .sort((a, b) => (order === 'asc' ? a - b : b - a));
       expect(inOrder).toEqual([...values, null, null]);
     }
   });
 
   it('orders episodes by number, not by letter', async () => {
-    expect((await names(mixer, { sort: 'programme', order: 'asc' })).slice(0, 5)).toEqual(['1.wav', '2.wav', '4.wav', '5.wav', '7.wav']);
+    expect((await names(mixer, { sort: 'programme', order: 'asc' })).slice(0, 5)).toEqual([
+      '1.wav',
+      '2.wav',
+      '4.wav',
+      '5.wav',
+      '7.wav',
+    ]);
   });
 
   it('neither skips nor repeats a row when others arrive between two pages', async () => {
@@ -234,7 +267,9 @@ describe('sorting and paging', () => {
     const newest = await allPages({}, () => numbered({}, n++));
     expect(newest).toEqual(before);
     const loudest = await names(mixer, { sort: 'integrated', limit: 200 });
-    const paged = await allPages({ sort: 'integrated' }, () => numbered({ figures: figures({ integratedLufs: -1 }) }, n++));
+    const paged = await allPages({ sort: 'integrated' }, () =>
+      numbered({ figures: figures({ integratedLufs: -1 }) }, n++),
+    );
     expect(paged).toEqual(loudest);
   });
 });

@@ -1,10 +1,18 @@
 import { randomUUID } from 'node:crypto';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
-import { deliverableReportSchema, passageSchema, patchDeliverablesResultSchema } from '../../../src/domain/api/deliverables.ts';
+import {
+  deliverableReportSchema,
+  passageSchema,
+  patchDeliverablesResultSchema,
+} from '../../../src/domain/api/deliverables.ts';
 import { specBodySchema } from '../../../src/domain/spec.ts';
 import { encodeSeries } from '../../../src/engine/series.ts';
 import type { MemberScope } from '../../../src/server/scope.ts';
-import { discardDeliverable, getDeliverableReport, patchDeliverables } from '../../../src/server/services/deliverables.ts';
+import {
+  discardDeliverable,
+  getDeliverableReport,
+  patchDeliverables,
+} from '../../../src/server/services/deliverables.ts';
 import { getDeliverableAudio, getDeliverablePassage } from '../../../src/server/services/passages.ts';
 import { closeStorage, putObject } from '../../../src/server/storage/storage.ts';
 import {
@@ -52,7 +60,11 @@ async function makeJudged(scope = chain.mixer, given: Parameters<typeof makeDeli
   return { ...made, verdictId };
 }
 const keyOf = async (id: string): Promise<{ storage_key: string; series_key: string }> =>
-  world.db('deliverables as d').join('measurements as m', 'm.deliverable_id', 'd.id').where('d.id', id).first('d.storage_key', 'm.series_key');
+  world
+    .db('deliverables as d')
+    .join('measurements as m', 'm.deliverable_id', 'd.id')
+    .where('d.id', id)
+    .first('d.storage_key', 'm.series_key');
 
 describe('the report of a deliverable', () => {
   it('carries the measurement, the specs that judge it, who uploaded it and what it replaces', async () => {
@@ -63,7 +75,12 @@ describe('the report of a deliverable', () => {
     expect(report).toMatchObject({
       sha256: made.sha256,
       uploadedBy: { id: chain.mixer.userId, name: chain.mixer.userName },
-      measurement: { id: made.measurementId, engineVersion: '1.0.0', figures: figures(), format: stereoFormat },
+      measurement: {
+        id: made.measurementId,
+        engineVersion: '1.0.0',
+        figures: figures(),
+        format: stereoFormat,
+      },
       specs: [{ specVersionId: chain.spec.id, body: r128Body }],
       replaces: { id: first.id, fileName: first.fileName },
     });
@@ -71,8 +88,14 @@ describe('the report of a deliverable', () => {
 
   it('is there before anything is measured, and says why something could not be', async () => {
     const { id } = await makeDeliverable(world.db, chain.mixer);
-    await world.db('deliverables').where({ id }).update({ state: 'unreadable', reason_code: 'not-audio', reason: 'This is a text file.' });
-    expect(valueOf(await getDeliverableReport(chain.mixer, id))).toMatchObject({ state: 'unreadable', reason: 'This is a text file.' });
+    await world
+      .db('deliverables')
+      .where({ id })
+      .update({ state: 'unreadable', reason_code: 'not-audio', reason: 'This is a text file.' });
+    expect(valueOf(await getDeliverableReport(chain.mixer, id))).toMatchObject({
+      state: 'unreadable',
+      reason: 'This is a text file.',
+    });
   });
 
   it('is not there for another organisation', async () => {
@@ -110,7 +133,9 @@ describe('details of many', () => {
     expect(items[1]).toMatchObject({ error: { code: 'not_found' } });
     expect(items[2]).toMatchObject({ value: { programmeTitle: 'Small Gales', versionLabel: 'v3' } });
     expect((await world.db('deliverables').where('id', theirs.id).first()).programme_id).toBeNull();
-    expect(await world.db('audit_events').where('subject_id', one.id).pluck('action')).toEqual(['deliverable.details_changed']);
+    expect(await world.db('audit_events').where('subject_id', one.id).pluck('action')).toEqual([
+      'deliverable.details_changed',
+    ]);
   });
 
   it('judge anew when the kind of content changes, without a second measurement', async () => {
@@ -125,8 +150,12 @@ describe('details of many', () => {
     const { id } = await makeDeliverable(db, chain.mixer);
     const patch = async (details: { contentKind?: 'podcast_episode'; channelIds?: string[] }) =>
       valueOf(await patchDeliverables(chain.mixer, [{ id, ...details }])).items[0];
-    expect(await patch({ channelIds: [channel.id] })).toMatchObject({ value: { outcome: 'pass', channels: [{ specVersionId: chain.spec.id }] } });
-    expect(await patch({ contentKind: 'podcast_episode' })).toMatchObject({ value: { outcome: 'fail', channels: [{ specVersionId: strict.id }] } });
+    expect(await patch({ channelIds: [channel.id] })).toMatchObject({
+      value: { outcome: 'pass', channels: [{ specVersionId: chain.spec.id }] },
+    });
+    expect(await patch({ contentKind: 'podcast_episode' })).toMatchObject({
+      value: { outcome: 'fail', channels: [{ specVersionId: strict.id }] },
+    });
     expect(await db('measurements').where('deliverable_id', id).pluck('id')).toHaveLength(1);
   });
 
@@ -144,12 +173,20 @@ describe('discarding', () => {
     expect(valueOf(await discardDeliverable(chain.mixer, id))).toEqual({ id });
     expect(codeOf(await getDeliverableReport(chain.mixer, id))).toBe('not_found');
     expect(codeOf(await discardDeliverable(chain.mixer, id))).toBe('not_found');
-    expect(await world.db('audit_events').where('subject_id', id).pluck('action')).toEqual(['deliverable.discarded']);
+    expect(await world.db('audit_events').where('subject_id', id).pluck('action')).toEqual([
+      'deliverable.discarded',
+    ]);
   });
 
   it('is refused once something was submitted, even when that was withdrawn', async () => {
     const made = await makeJudged();
-    await makeSubmission(world.db, chain.mixer, made, { ...chain, specVersionId: chain.spec.id, verdictId: made.verdictId }, { state: 'withdrawn' });
+    await makeSubmission(
+      world.db,
+      chain.mixer,
+      made,
+      { ...chain, specVersionId: chain.spec.id, verdictId: made.verdictId },
+      { state: 'withdrawn' },
+    );
     const refusal = refusalOf(await discardDeliverable(chain.mixer, made.id));
     expect(refusal).toMatchObject({ code: 'conflict', message: expect.stringContaining(chain.channel.name) });
     expect(codeOf(await getDeliverableReport(chain.mixer, made.id))).toBe('ok');
@@ -199,6 +236,8 @@ describe('what a report draws and plays', () => {
     expect(answer.status).toBe(206);
     expect(await answer.text()).toBe('RIFF');
     expect(answer.headers.get('content-type')).toBe('audio/wav');
-    expect(answer.headers.get('content-disposition')).toMatch(/^inline; filename\*=UTF-8''Small%20Gales%202\.11/);
+    expect(answer.headers.get('content-disposition')).toMatch(
+      /^inline; filename\*=UTF-8''Small%20Gales%202\.11/,
+    );
   });
 });

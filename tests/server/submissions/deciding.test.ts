@@ -1,5 +1,9 @@
 import { afterAll, beforeAll, beforeEach, describe, expect, it, vi } from 'vitest';
-import { decisionsResultSchema, submissionReportSchema, type SubmissionRow } from '../../../src/domain/api/submissions.ts';
+import {
+  decisionsResultSchema,
+  submissionReportSchema,
+  type SubmissionRow,
+} from '../../../src/domain/api/submissions.ts';
 import type { MemberScope } from '../../../src/server/scope.ts';
 import { decideSubmissions, takeBackDecision } from '../../../src/server/services/decisions.ts';
 import { getSubmissionReport, withdrawSubmission } from '../../../src/server/services/submissions.ts';
@@ -20,7 +24,8 @@ beforeEach(async () => {
 afterAll(() => world.close());
 
 type Asked = Parameters<typeof decideSubmissions>[1][number];
-const decide = async (scope: MemberScope, decision: Asked) => firstOf(await decideSubmissions(scope, [decision]));
+const decide = async (scope: MemberScope, decision: Asked) =>
+  firstOf(await decideSubmissions(scope, [decision]));
 const approve = ({ id, version }: SubmissionRow): Asked => ({ id, version, decision: 'approve' });
 const reject = ({ id, version }: SubmissionRow, failingRuleIds: string[] = []): Asked => ({
   id,
@@ -42,24 +47,42 @@ describe('deciding', () => {
   it('approves what passes: state, decider, audit for both sides, a mail that waits for the undo time', async () => {
     const row = await makeSubmitted(world.db, chain);
     const decided = valueOf(await decide(chain.operator, approve(row)));
-    expect(decided).toMatchObject({ state: 'approved', version: 2, decidedBy: { id: chain.operator.userId, name: chain.operator.userName } });
+    expect(decided).toMatchObject({
+      state: 'approved',
+      version: 2,
+      decidedBy: { id: chain.operator.userId, name: chain.operator.userName },
+    });
     const decidedAt = new Date(decided.decidedAt ?? '');
     expect(new Date(decided.takeBackUntil ?? '').getTime() - decidedAt.getTime()).toBe(60_000);
     const mails = await decisionMails(row.id);
-    expect(mails).toMatchObject([{ kind: 'submission_approved', to_address: chain.mixer.email, state: 'queued' }]);
+    expect(mails).toMatchObject([
+      { kind: 'submission_approved', to_address: chain.mixer.email, state: 'queued' },
+    ]);
     expect(mails[0].send_after.getTime() - decidedAt.getTime()).toBe(60_000);
-    const audit = await world.db('audit_events').where({ subject_id: row.id, action: 'submission.approved' }).first();
-    expect(audit).toMatchObject({ organisation_id: chain.distributor.id, counterpart_id: chain.supplier.id, actor_id: chain.operator.userId });
+    const audit = await world
+      .db('audit_events')
+      .where({ subject_id: row.id, action: 'submission.approved' })
+      .first();
+    expect(audit).toMatchObject({
+      organisation_id: chain.distributor.id,
+      counterpart_id: chain.supplier.id,
+      actor_id: chain.operator.userId,
+    });
     expect(audit.detail).toMatchObject({ channelName: chain.channel.name });
   });
 
   it('rejects with a reason and the rules that it names, and mails both', async () => {
     const row = await makeSubmitted(world.db, chain, { figures: failing });
     const decided = valueOf(await decide(chain.operator, reject(row, ['integrated'])));
-    expect(decided).toMatchObject({ state: 'rejected', decisionReason: 'Please bring it down by 4 LU.', failingRuleIds: ['integrated'] });
+    expect(decided).toMatchObject({
+      state: 'rejected',
+      decisionReason: 'Please bring it down by 4 LU.',
+      failingRuleIds: ['integrated'],
+    });
     const [mail] = await decisionMails(row.id);
     expect(mail).toMatchObject({ kind: 'submission_rejected', to_address: chain.mixer.email });
-    for (const words of ['Please bring it down by 4 LU.', 'Integrated loudness', 'Maximum true peak']) expect(mail.text_body).toContain(words);
+    for (const words of ['Please bring it down by 4 LU.', 'Integrated loudness', 'Maximum true peak'])
+      expect(mail.text_body).toContain(words);
   });
 
   it('approves what fails with every failing rule waived, and keeps who waived what', async () => {
@@ -68,7 +91,11 @@ describe('deciding', () => {
     expect(decided.state).toBe('approved_with_waiver');
     const report = submissionReportSchema.parse(valueOf(await getSubmissionReport(chain.mixer, row.id)));
     expect(report.waivers).toMatchObject([
-      { ruleId: 'integrated', reason: 'Live event, agreed by telephone.', waivedBy: { id: chain.operator.userId } },
+      {
+        ruleId: 'integrated',
+        reason: 'Live event, agreed by telephone.',
+        waivedBy: { id: chain.operator.userId },
+      },
       { ruleId: 'true-peak' },
     ]);
     expect((await decisionMails(row.id))[0].text_body).toContain('Maximum true peak');
@@ -78,30 +105,54 @@ describe('deciding', () => {
     const row = await makeSubmitted(world.db, chain, { figures: failing });
     expect(refusalOf(await decide(chain.operator, approve(row)))).toMatchObject({
       code: 'conflict',
-      message: 'It fails Integrated loudness and Maximum true peak, so it is not approved as it is. Waive what fails with a reason, or reject it.',
+      message:
+        'It fails Integrated loudness and Maximum true peak, so it is not approved as it is. Waive what fails with a reason, or reject it.',
     });
     expect(codeOf(await decide(chain.operator, waive(row, 'integrated')))).toBe('conflict');
-    expect(codeOf(await decide(chain.operator, waive(row, 'integrated', 'range', 'true-peak')))).toBe('bad_input');
+    expect(codeOf(await decide(chain.operator, waive(row, 'integrated', 'range', 'true-peak')))).toBe(
+      'bad_input',
+    );
     expect(codeOf(await decide(chain.operator, reject(row, ['colour'])))).toBe('bad_input');
-    expect(await world.db('submissions').where('id', row.id).first()).toMatchObject({ state: 'awaiting_review', version: 1 });
+    expect(await world.db('submissions').where('id', row.id).first()).toMatchObject({
+      state: 'awaiting_review',
+      version: 1,
+    });
     expect(await actionsOn(world.db, row.id)).toEqual(['submission.submitted']);
     expect(await decisionMails(row.id)).toEqual([]);
   });
 
   it('answers item by item in the order asked', async () => {
-    const [clean, loud] = [await makeSubmitted(world.db, chain), await makeSubmitted(world.db, chain, { figures: failing })];
+    const [clean, loud] = [
+      await makeSubmitted(world.db, chain),
+      await makeSubmitted(world.db, chain, { figures: failing }),
+    ];
     const foreign = await makeSubmitted(world.db, await makeChain(world.db));
     const { items } = decisionsResultSchema.parse(
-      valueOf(await decideSubmissions(chain.operator, [approve(loud), approve(foreign), approve(clean), approve(clean)])),
+      valueOf(
+        await decideSubmissions(chain.operator, [
+          approve(loud),
+          approve(foreign),
+          approve(clean),
+          approve(clean),
+        ]),
+      ),
     );
     expect(items.map((item) => item.id)).toEqual([loud.id, foreign.id, clean.id, clean.id]);
-    expect(items.map((item) => (item.ok ? item.value.state : item.error.code))).toEqual(['conflict', 'not_found', 'approved', 'conflict']);
+    expect(items.map((item) => (item.ok ? item.value.state : item.error.code))).toEqual([
+      'conflict',
+      'not_found',
+      'approved',
+      'conflict',
+    ]);
   });
 
   it('mails the mix engineers of the supplier when whoever submitted it has left', async () => {
     const colleague = await makeMember(world.db, chain.supplier, ['mix_engineer']);
     const row = await makeSubmitted(world.db, chain);
-    await world.db('memberships').where('user_id', chain.mixer.userId).update({ removed_at: world.db.fn.now() });
+    await world
+      .db('memberships')
+      .where('user_id', chain.mixer.userId)
+      .update({ removed_at: world.db.fn.now() });
     valueOf(await decide(chain.operator, approve(row)));
     expect((await decisionMails(row.id)).map((mail) => mail.to_address)).toEqual([colleague.email]);
   });
@@ -110,8 +161,13 @@ describe('deciding', () => {
 describe('who decides', () => {
   it('is nobody who uploaded it, in whichever organisation they work now', async () => {
     const row = await makeSubmitted(world.db, chain);
-    const both = await makeMember(world.db, chain.distributor, ['qc_operator'], { userId: chain.mixer.userId });
-    expect(refusalOf(await decide(both, approve(row)))).toMatchObject({ code: 'forbidden', message: expect.stringMatching(/uploaded this file yourself/) });
+    const both = await makeMember(world.db, chain.distributor, ['qc_operator'], {
+      userId: chain.mixer.userId,
+    });
+    expect(refusalOf(await decide(both, approve(row)))).toMatchObject({
+      code: 'forbidden',
+      message: expect.stringMatching(/uploaded this file yourself/),
+    });
     expect(valueOf(await getSubmissionReport(both, row.id)).ownUpload).toBe(true);
     expect(valueOf(await getSubmissionReport(chain.operator, row.id)).ownUpload).toBe(false);
     expect(valueOf(await decide(chain.operator, approve(row))).state).toBe('approved');
@@ -140,7 +196,9 @@ describe('two people on one submission', () => {
     const refusal = refusalOf(loser);
     expect(refusal.code).toBe('conflict');
     expect(refusal.message).toMatch(
-      new RegExp(`^${decidedBy?.name} \\(${chain.distributor.name}\\) ${deed} it on \\d+ \\w+ \\d{4} at \\d\\d:\\d\\d:\\d\\d (GMT|BST)\\. Your decision was not taken\\.$`),
+      new RegExp(
+        `^${decidedBy?.name} \\(${chain.distributor.name}\\) ${deed} it on \\d+ \\w+ \\d{4} at \\d\\d:\\d\\d:\\d\\d (GMT|BST)\\. Your decision was not taken\\.$`,
+      ),
     );
     expect(await actionsOn(world.db, row.id)).toEqual(['submission.submitted', `submission.${deed}`]);
     expect(await decisionMails(row.id)).toHaveLength(1);
@@ -149,7 +207,12 @@ describe('two people on one submission', () => {
   it('never both win, however many try at once', async () => {
     const rows = await Promise.all(Array.from({ length: 5 }, () => makeSubmitted(world.db, chain)));
     const all = await Promise.all(
-      rows.flatMap((row) => [chain.operator, second, chain.operator].map(async (scope) => ({ id: row.id, code: codeOf(await decide(scope, approve(row))) }))),
+      rows.flatMap((row) =>
+        [chain.operator, second, chain.operator].map(async (scope) => ({
+          id: row.id,
+          code: codeOf(await decide(scope, approve(row))),
+        })),
+      ),
     );
     for (const row of rows) {
       const codes = all.filter(({ id }) => id === row.id).map(({ code }) => code);
@@ -159,16 +222,24 @@ describe('two people on one submission', () => {
 
   it('lets either the withdrawal or the decision happen, never both', async () => {
     const row = await makeSubmitted(world.db, chain);
-    const [withdrawn, decided] = await Promise.all([withdrawSubmission(chain.mixer, row.id), decide(chain.operator, approve(row))]);
+    const [withdrawn, decided] = await Promise.all([
+      withdrawSubmission(chain.mixer, row.id),
+      decide(chain.operator, approve(row)),
+    ]);
     expect([codeOf(withdrawn), codeOf(decided)].sort()).toEqual(['conflict', 'ok']);
-    if (!decided.ok) expect(decided.refusal.message).toMatch(new RegExp(`^${chain.mixer.userName} .* withdrew it on .* There is nothing left to decide\\.$`));
+    if (!decided.ok)
+      expect(decided.refusal.message).toMatch(
+        new RegExp(`^${chain.mixer.userName} .* withdrew it on .* There is nothing left to decide\\.$`),
+      );
   });
 
   it('does not decide on what the reader has not seen', async () => {
     const row = await makeSubmitted(world.db, chain);
     valueOf(await decide(chain.operator, approve(row)));
     valueOf(await takeBackDecision(chain.operator, row.id));
-    expect(refusalOf(await decide(second, reject(row))).message).toMatch(/took the decision back on .* It awaits a decision again/);
+    expect(refusalOf(await decide(second, reject(row))).message).toMatch(
+      /took the decision back on .* It awaits a decision again/,
+    );
     expect(valueOf(await decide(second, reject({ ...row, version: 3 }))).state).toBe('rejected');
   });
 });
@@ -178,10 +249,20 @@ describe('taking a decision back', () => {
     const row = await makeSubmitted(world.db, chain, { figures: failing });
     valueOf(await decide(chain.operator, waive(row, 'integrated', 'true-peak')));
     const back = valueOf(await takeBackDecision(second, row.id));
-    expect(back).toMatchObject({ state: 'awaiting_review', version: 3, decidedBy: null, decidedAt: null, takeBackUntil: null });
+    expect(back).toMatchObject({
+      state: 'awaiting_review',
+      version: 3,
+      decidedBy: null,
+      decidedAt: null,
+      takeBackUntil: null,
+    });
     expect((await decisionMails(row.id)).map((mail) => mail.state)).toEqual(['cancelled']);
     expect(valueOf(await getSubmissionReport(chain.operator, row.id)).waivers).toEqual([]);
-    expect(await actionsOn(world.db, row.id)).toEqual(['submission.submitted', 'submission.approved_with_waiver', 'submission.taken_back']);
+    expect(await actionsOn(world.db, row.id)).toEqual([
+      'submission.submitted',
+      'submission.approved_with_waiver',
+      'submission.taken_back',
+    ]);
     expect(valueOf(await decide(chain.operator, reject(back))).state).toBe('rejected');
     expect((await decisionMails(row.id)).map((mail) => [mail.kind, mail.state])).toEqual([
       ['submission_approved', 'cancelled'],
@@ -192,8 +273,14 @@ describe('taking a decision back', () => {
   it('is refused after the undo time', async () => {
     const row = await makeSubmitted(world.db, chain);
     valueOf(await decide(chain.operator, approve(row)));
-    await world.db('submissions').where('id', row.id).update({ decided_at: world.db.raw("now() - interval '61 seconds'") });
-    expect(refusalOf(await takeBackDecision(chain.operator, row.id))).toMatchObject({ code: 'conflict', message: expect.stringContaining('60 s') });
+    await world
+      .db('submissions')
+      .where('id', row.id)
+      .update({ decided_at: world.db.raw("now() - interval '61 seconds'") });
+    expect(refusalOf(await takeBackDecision(chain.operator, row.id))).toMatchObject({
+      code: 'conflict',
+      message: expect.stringContaining('60 s'),
+    });
     expect(valueOf(await getSubmissionReport(chain.operator, row.id)).takeBackUntil).toBeNull();
     expect((await decisionMails(row.id)).map((mail) => mail.state)).toEqual(['queued']);
   });
@@ -201,7 +288,10 @@ describe('taking a decision back', () => {
   it('is refused once the mail has gone, even within the time', async () => {
     const row = await makeSubmitted(world.db, chain);
     valueOf(await decide(chain.operator, approve(row)));
-    await world.db('mail_outbox').where({ submission_id: row.id, kind: 'submission_approved' }).update({ state: 'sent' });
+    await world
+      .db('mail_outbox')
+      .where({ submission_id: row.id, kind: 'submission_approved' })
+      .update({ state: 'sent' });
     expect(codeOf(await takeBackDecision(chain.operator, row.id))).toBe('conflict');
     expect((await world.db('submissions').where('id', row.id).first()).state).toBe('approved');
   });
@@ -232,7 +322,10 @@ describe('when Redis is away', () => {
     });
     const publish = vi.spyOn(redis(), 'publish').mockRejectedValue(new Error('gone'));
     try {
-      expect(valueOf(await decide(chain.operator, approve(row)))).toMatchObject({ state: 'approved', openBy: [] });
+      expect(valueOf(await decide(chain.operator, approve(row)))).toMatchObject({
+        state: 'approved',
+        openBy: [],
+      });
     } finally {
       pipeline.mockRestore();
       publish.mockRestore();

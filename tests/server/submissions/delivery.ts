@@ -17,7 +17,11 @@ export async function submit(
   deliverable: Pick<MadeDeliverable, 'id'>,
   airAt: string | null = null,
 ): Promise<Answer<SubmissionRow>> {
-  return firstOf(await createSubmissions(chain.mixer, [{ deliverableId: deliverable.id, channelId: chain.channel.id, airAt }]));
+  return firstOf(
+    await createSubmissions(chain.mixer, [
+      { deliverableId: deliverable.id, channelId: chain.channel.id, airAt },
+    ]),
+  );
 }
 
 /** A deliverable of the chain's mix engineer, measured and put to the chain's channel. */
@@ -32,7 +36,10 @@ export async function makeSubmitted(
 }
 
 export const actionsOn = (db: Knex, submissionId: string): Promise<string[]> =>
-  db('audit_events').where({ subject_kind: 'submission', subject_id: submissionId }).orderBy('id').pluck('action');
+  db('audit_events')
+    .where({ subject_kind: 'submission', subject_id: submissionId })
+    .orderBy('id')
+    .pluck('action');
 
 export const mailsAbout = (db: Knex, submissionId: string) =>
   db('mail_outbox').where('submission_id', submissionId).orderBy('created_at').orderBy('to_address');

@@ -1,6 +1,11 @@
 import { randomUUID } from 'node:crypto';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
-import { presenceSchema, submissionListSchema, submissionQuerySchema, submissionSorts } from '../../../src/domain/api/submissions.ts';
+import {
+  presenceSchema,
+  submissionListSchema,
+  submissionQuerySchema,
+  submissionSorts,
+} from '../../../src/domain/api/submissions.ts';
 import { passageSchema } from '../../../src/domain/api/deliverables.ts';
 import type { LiveEvent } from '../../../src/domain/api/people.ts';
 import { encodeSeries } from '../../../src/engine/series.ts';
@@ -12,7 +17,16 @@ import { getSubmissionAudio, getSubmissionPassage } from '../../../src/server/se
 import { tellPresence } from '../../../src/server/services/presence.ts';
 import { listSubmissions } from '../../../src/server/services/submissions.ts';
 import { closeStorage, putObject } from '../../../src/server/storage/storage.ts';
-import { figures, makeAgreement, makeAssignment, makeChain, makeChannel, makeMember, openWorld, type World } from '../../factories/world.ts';
+import {
+  figures,
+  makeAgreement,
+  makeAssignment,
+  makeChain,
+  makeChannel,
+  makeMember,
+  openWorld,
+  type World,
+} from '../../factories/world.ts';
 import { codeOf, refusalOf, valueOf } from '../answers.ts';
 import { failing, makeSubmitted, type Chain } from './delivery.ts';
 
@@ -28,7 +42,9 @@ afterAll(async () => {
 
 type Given = Partial<Record<keyof typeof submissionQuerySchema.shape, string | number>>;
 async function list(scope: MemberScope, given: Given = {}) {
-  return submissionListSchema.parse(valueOf(await listSubmissions(scope, submissionQuerySchema.parse(given))));
+  return submissionListSchema.parse(
+    valueOf(await listSubmissions(scope, submissionQuerySchema.parse(given))),
+  );
 }
 const hoursFromNow = (hours: number) => new Date(Date.now() + hours * 3_600_000).toISOString();
 
@@ -36,7 +52,8 @@ describe('the list of submissions', () => {
   let chain: Chain;
   let rival: Chain;
   let secondChannel: { id: string; name: string };
-  const files = async (scope: MemberScope, given: Given = {}) => (await list(scope, given)).items.map((row) => row.fileName);
+  const files = async (scope: MemberScope, given: Given = {}) =>
+    (await list(scope, given)).items.map((row) => row.fileName);
   beforeAll(async () => {
     const { db } = world;
     chain = await makeChain(db);
@@ -46,7 +63,12 @@ describe('the list of submissions', () => {
     await makeAssignment(db, chain.distributor, secondChannel, chain.spec.specId);
     await makeAgreement(db, chain.distributor, secondChannel, chain.supplier);
 
-    await makeSubmitted(db, chain, { fileName: 'gales.wav', programmeTitle: 'Small Gales', episodeLabel: '2.11', airAt: hoursFromNow(30) });
+    await makeSubmitted(db, chain, {
+      fileName: 'gales.wav',
+      programmeTitle: 'Small Gales',
+      episodeLabel: '2.11',
+      airAt: hoursFromNow(30),
+    });
     await makeSubmitted(db, chain, { fileName: 'loud.wav', figures: failing, airAt: hoursFromNow(2) });
     await makeSubmitted(db, { ...chain, channel: secondChannel }, { fileName: 'kids.wav' });
     await makeSubmitted(db, chain, { fileName: 'late.wav', airAt: hoursFromNow(-1) });
@@ -57,20 +79,48 @@ describe('the list of submissions', () => {
   });
 
   it('is the queue of its channels to a distributor, soonest to air first, undated last', async () => {
-    expect(await files(chain.operator)).toEqual(['late.wav', 'done.wav', 'loud.wav', 'rival.wav', 'gales.wav', 'kids.wav']);
-    expect(await files(chain.operator, { state: 'awaiting_review' })).toEqual(['late.wav', 'loud.wav', 'rival.wav', 'gales.wav', 'kids.wav']);
+    expect(await files(chain.operator)).toEqual([
+      'late.wav',
+      'done.wav',
+      'loud.wav',
+      'rival.wav',
+      'gales.wav',
+      'kids.wav',
+    ]);
+    expect(await files(chain.operator, { state: 'awaiting_review' })).toEqual([
+      'late.wav',
+      'loud.wav',
+      'rival.wav',
+      'gales.wav',
+      'kids.wav',
+    ]);
   });
 
   it('is its own submissions to a supplier, and never a rival’s', async () => {
-    expect((await files(chain.mixer)).sort()).toEqual(['done.wav', 'gales.wav', 'kids.wav', 'late.wav', 'loud.wav']);
+    expect((await files(chain.mixer)).sort()).toEqual([
+      'done.wav',
+      'gales.wav',
+      'kids.wav',
+      'late.wav',
+      'loud.wav',
+    ]);
     expect(await files(rival.mixer)).toEqual(['rival.wav']);
     expect(await files(rival.mixer, { supplier: chain.supplier.id })).toEqual([]);
   });
 
   it('counts over the whole filter, not over the page', async () => {
-    expect(await list(chain.operator, { limit: 1 })).toMatchObject({ total: 6, counts: { awaiting: 5, airingWithin24h: 2 } });
-    expect(await list(chain.operator, { supplier: rival.supplier.id })).toMatchObject({ total: 1, counts: { awaiting: 1, airingWithin24h: 1 } });
-    expect((await list(chain.operator, { state: 'approved' })).counts).toEqual({ awaiting: 0, airingWithin24h: 0 });
+    expect(await list(chain.operator, { limit: 1 })).toMatchObject({
+      total: 6,
+      counts: { awaiting: 5, airingWithin24h: 2 },
+    });
+    expect(await list(chain.operator, { supplier: rival.supplier.id })).toMatchObject({
+      total: 1,
+      counts: { awaiting: 1, airingWithin24h: 1 },
+    });
+    expect((await list(chain.operator, { state: 'approved' })).counts).toEqual({
+      awaiting: 0,
+      airingWithin24h: 0,
+    });
   });
 
   it('filters by words, verdict, channel and state', async () => {
@@ -81,24 +131,32 @@ describe('the list of submissions', () => {
     expect(await files(chain.operator, { channel: secondChannel.id })).toEqual(['kids.wav']);
     expect(await files(chain.operator, { state: 'approved,rejected' })).toEqual(['done.wav']);
     for (const odd of [{ state: 'pending' }, { verdict: 'none' }, { cursor: 'x' }] satisfies Given[])
-      expect(refusalOf(await listSubmissions(chain.operator, submissionQuerySchema.parse(odd))).code).toBe('bad_input');
+      expect(refusalOf(await listSubmissions(chain.operator, submissionQuerySchema.parse(odd))).code).toBe(
+        'bad_input',
+      );
   });
 
-  it.each(submissionSorts.flatMap((sort) => [{ sort, order: 'asc' }, { sort, order: 'desc' }]))(
-    'gives every row once in pages, by %j',
-    async (given) => {
-      const atOnce = await files(chain.operator, given);
-      const paged: string[] = [];
-      let cursor: string | null = null;
-      do {
-        const page: Awaited<ReturnType<typeof list>> = await list(chain.operator, { ...given, limit: 2, ...(cursor && { cursor }) });
-        paged.push(...page.items.map((row) => row.fileName));
-        cursor = page.nextCursor;
-      } while (cursor);
-      expect(atOnce).toHaveLength(6);
-      expect(paged).toEqual(atOnce);
-    },
-  );
+  it.each(
+    submissionSorts.flatMap((sort) => [
+      { sort, order: 'asc' },
+      { sort, order: 'desc' },
+    ]),
+  )('gives every row once in pages, by %j', async (given) => {
+    const atOnce = await files(chain.operator, given);
+    const paged: string[] = [];
+    let cursor: string | null = null;
+    do {
+      const page: Awaited<ReturnType<typeof list>> = await list(chain.operator, {
+        ...given,
+        limit: 2,
+        ...(cursor && { cursor }),
+      });
+      paged.push(...page.items.map((row) => row.fileName));
+      cursor = page.nextCursor;
+    } while (cursor);
+    expect(atOnce).toHaveLength(6);
+    expect(paged).toEqual(atOnce);
+  });
 });
 
 describe('who has it open', () => {
@@ -150,7 +208,11 @@ describe('who has it open', () => {
     const key = `presence:${id}`;
     expect(await redis().ttl(key)).toBeGreaterThan(25);
     expect(await redis().ttl(key)).toBeLessThanOrEqual(30);
-    await redis().hset(key, second.userId, JSON.stringify({ name: second.userName, at: Date.now() - 30_001 }));
+    await redis().hset(
+      key,
+      second.userId,
+      JSON.stringify({ name: second.userName, at: Date.now() - 30_001 }),
+    );
     expect(valueOf(await tellPresence(chain.operator, id))).toEqual({ openBy: [] });
   });
 });
@@ -159,7 +221,9 @@ describe('what a reviewer draws and plays', () => {
   it('is what was submitted, for both sides and nobody else', async () => {
     const chain = await makeChain(world.db);
     const stranger = await makeChain(world.db);
-    const { id, deliverableId } = await makeSubmitted(world.db, chain, { figures: figures({ maxDbtp: 0.2 }) });
+    const { id, deliverableId } = await makeSubmitted(world.db, chain, {
+      figures: figures({ maxDbtp: 0.2 }),
+    });
     const { series_key, storage_key } = await world
       .db('deliverables as d')
       .join('measurements as m', 'm.deliverable_id', 'd.id')

@@ -1,6 +1,10 @@
 import { randomUUID } from 'node:crypto';
 import { afterAll, beforeAll, beforeEach, describe, expect, it } from 'vitest';
-import { createSubmissionsResultSchema, submissionReportSchema, submissionRowSchema } from '../../../src/domain/api/submissions.ts';
+import {
+  createSubmissionsResultSchema,
+  submissionReportSchema,
+  submissionRowSchema,
+} from '../../../src/domain/api/submissions.ts';
 import type { LiveEvent } from '../../../src/domain/api/people.ts';
 import { closeEventsHub, listenToEvents } from '../../../src/server/events-hub.ts';
 import {
@@ -67,12 +71,20 @@ describe('submitting', () => {
       decidedBy: null,
     });
     const frozen = await world.db('submissions').where('id', row.id).first();
-    expect(frozen).toMatchObject({ sha256: made.sha256, measurement_id: made.measurementId, spec_version_id: chain.spec.id });
+    expect(frozen).toMatchObject({
+      sha256: made.sha256,
+      measurement_id: made.measurementId,
+      spec_version_id: chain.spec.id,
+    });
     for (const scope of [chain.mixer, chain.operator, chain.specOwner])
       expect(codeOf(await getSubmissionReport(scope, row.id))).toBe('ok');
     expect(await actionsOn(world.db, row.id)).toEqual(['submission.submitted']);
     const audit = await world.db('audit_events').where('subject_id', row.id).first();
-    expect(audit).toMatchObject({ organisation_id: chain.supplier.id, counterpart_id: chain.distributor.id, actor_id: chain.mixer.userId });
+    expect(audit).toMatchObject({
+      organisation_id: chain.supplier.id,
+      counterpart_id: chain.distributor.id,
+      actor_id: chain.mixer.userId,
+    });
   });
 
   it('mails every QC operator of the distributor, and nobody else', async () => {
@@ -86,29 +98,60 @@ describe('submitting', () => {
 
   it('judges by the version in force at that moment, and keeps it when a newer one comes', async () => {
     const made = await makeDeliverable(world.db, chain.mixer, { channelIds: [chain.channel.id] });
-    const second = await makeSpecVersion(world.db, chain.distributor, { specId: chain.spec.specId, inForceFrom: new Date('2026-02-01T00:00:00Z') });
+    const second = await makeSpecVersion(world.db, chain.distributor, {
+      specId: chain.spec.specId,
+      inForceFrom: new Date('2026-02-01T00:00:00Z'),
+    });
     const row = valueOf(await submit(chain, made));
     expect(row.specVersionNumber).toBe(2);
-    const stricter = { ...r128Body, rules: r128Body.rules.map((rule) => (rule.kind === 'integrated' ? { ...rule, targetLufs: -16 } : rule)) };
-    await makeSpecVersion(world.db, chain.distributor, { specId: chain.spec.specId, body: stricter, inForceFrom: new Date('2026-03-01T00:00:00Z') });
+    const stricter = {
+      ...r128Body,
+      rules: r128Body.rules.map((rule) => (rule.kind === 'integrated' ? { ...rule, targetLufs: -16 } : rule)),
+    };
+    await makeSpecVersion(world.db, chain.distributor, {
+      specId: chain.spec.specId,
+      body: stricter,
+      inForceFrom: new Date('2026-03-01T00:00:00Z'),
+    });
     const report = submissionReportSchema.parse(valueOf(await getSubmissionReport(chain.operator, row.id)));
-    expect(report).toMatchObject({ specVersionId: second.id, verdict: { outcome: 'pass' }, underNewer: { specVersionNumber: 3, outcome: 'fail' } });
+    expect(report).toMatchObject({
+      specVersionId: second.id,
+      verdict: { outcome: 'pass' },
+      underNewer: { specVersionNumber: 3, outcome: 'fail' },
+    });
     expect(report.specBody).toEqual(r128Body);
   });
 
   it('says nothing of a newer version while none is in force', async () => {
     const { id } = await makeSubmitted(world.db, chain);
-    await makeSpecVersion(world.db, chain.distributor, { specId: chain.spec.specId, inForceFrom: new Date('2126-01-01T00:00:00Z') });
+    await makeSpecVersion(world.db, chain.distributor, {
+      specId: chain.spec.specId,
+      inForceFrom: new Date('2126-01-01T00:00:00Z'),
+    });
     expect(valueOf(await getSubmissionReport(chain.operator, id)).underNewer).toBeNull();
   });
 
   it('answers each item by itself, also when the same is asked twice at once', async () => {
-    const [one, two] = [await makeDeliverable(world.db, chain.mixer), await makeDeliverable(world.db, chain.mixer)];
+    const [one, two] = [
+      await makeDeliverable(world.db, chain.mixer),
+      await makeDeliverable(world.db, chain.mixer),
+    ];
     const theirs = await makeDeliverable(world.db, stranger.mixer);
-    const ask = [one, theirs, two, one].map(({ id }) => ({ deliverableId: id, channelId: chain.channel.id, airAt: null }));
+    const ask = [one, theirs, two, one].map(({ id }) => ({
+      deliverableId: id,
+      channelId: chain.channel.id,
+      airAt: null,
+    }));
     const { items } = createSubmissionsResultSchema.parse(valueOf(await createSubmissions(chain.mixer, ask)));
-    expect(items.map((item) => item.id)).toEqual(ask.map((item) => `${item.deliverableId}/${item.channelId}`));
-    expect(items.map((item) => (item.ok ? 'ok' : item.error.code))).toEqual(['ok', 'not_found', 'ok', 'conflict']);
+    expect(items.map((item) => item.id)).toEqual(
+      ask.map((item) => `${item.deliverableId}/${item.channelId}`),
+    );
+    expect(items.map((item) => (item.ok ? 'ok' : item.error.code))).toEqual([
+      'ok',
+      'not_found',
+      'ok',
+      'conflict',
+    ]);
     const three = await makeDeliverable(world.db, chain.mixer);
     const both = await Promise.all([submit(chain, three), submit(chain, three)]);
     expect(both.map(codeOf).sort()).toEqual(['conflict', 'ok']);
@@ -146,19 +189,31 @@ describe('what is not submitted', () => {
   ])('refuses what is %s', async (state, message) => {
     const made = await makeDeliverable(world.db, chain.mixer);
     await world.db('deliverables').where('id', made.id).update({ state });
-    expect(refusalOf(await submit(chain, made))).toMatchObject({ code: 'conflict', message: expect.stringMatching(message) });
+    expect(refusalOf(await submit(chain, made))).toMatchObject({
+      code: 'conflict',
+      message: expect.stringMatching(message),
+    });
   });
 
   it('refuses what is unreadable, with the reason', async () => {
     const made = await makeDeliverable(world.db, chain.mixer);
-    await world.db('deliverables').where('id', made.id).update({ state: 'unreadable', reason_code: 'empty', reason: 'It holds no audio.' });
+    await world
+      .db('deliverables')
+      .where('id', made.id)
+      .update({ state: 'unreadable', reason_code: 'empty', reason: 'It holds no audio.' });
     expect(refusalOf(await submit(chain, made)).message).toContain('It holds no audio.');
   });
 
   it('refuses a kind of content for which the channel has no spec in force', async () => {
     const made = await makeDeliverable(world.db, chain.mixer, { contentKind: 'music_programme' });
-    expect(refusalOf(await submit(chain, made))).toMatchObject({ code: 'conflict', message: expect.stringMatching(/no delivery spec in force/) });
-    await makeAssignment(world.db, chain.distributor, chain.channel, chain.spec.specId, { contentKind: 'music_programme', inForceFrom: new Date('2126-01-01T00:00:00Z') });
+    expect(refusalOf(await submit(chain, made))).toMatchObject({
+      code: 'conflict',
+      message: expect.stringMatching(/no delivery spec in force/),
+    });
+    await makeAssignment(world.db, chain.distributor, chain.channel, chain.spec.specId, {
+      contentKind: 'music_programme',
+      inForceFrom: new Date('2126-01-01T00:00:00Z'),
+    });
     expect(codeOf(await submit(chain, made))).toBe('conflict');
     expect(await world.db('submissions').where('deliverable_id', made.id)).toEqual([]);
   });
@@ -171,7 +226,10 @@ describe('what is not submitted', () => {
     expect(codeOf(await submit(to, made))).toBe('not_found');
     const agreement = await makeAgreement(world.db, chain.distributor, channel, chain.supplier);
     await world.db('agreements').where('id', agreement).update({ ended_at: world.db.fn.now() });
-    expect(refusalOf(await submit(to, made))).toMatchObject({ code: 'conflict', message: expect.stringMatching(/agreement .* has ended/) });
+    expect(refusalOf(await submit(to, made))).toMatchObject({
+      code: 'conflict',
+      message: expect.stringMatching(/agreement .* has ended/),
+    });
     await makeAgreement(world.db, chain.distributor, channel, chain.supplier);
     expect(codeOf(await submit(to, made))).toBe('ok');
   });
@@ -180,10 +238,20 @@ describe('what is not submitted', () => {
     const row = await makeSubmitted(world.db, chain);
     const again = () => submit(chain, { id: row.deliverableId });
     expect(refusalOf(await again()).message).toMatch(/awaits review .* already/);
-    const decided = { decided_by: chain.operator.userId, decided_at: world.db.fn.now(), decision_reason: 'Too wide.' };
-    await world.db('submissions').where('id', row.id).update({ state: 'approved', ...decided });
+    const decided = {
+      decided_by: chain.operator.userId,
+      decided_at: world.db.fn.now(),
+      decision_reason: 'Too wide.',
+    };
+    await world
+      .db('submissions')
+      .where('id', row.id)
+      .update({ state: 'approved', ...decided });
     expect(refusalOf(await again()).message).toMatch(/approved .* already/);
-    await world.db('submissions').where('id', row.id).update({ state: 'rejected', ...decided });
+    await world
+      .db('submissions')
+      .where('id', row.id)
+      .update({ state: 'rejected', ...decided });
     expect(codeOf(await again())).toBe('ok');
   });
 
@@ -191,8 +259,16 @@ describe('what is not submitted', () => {
     const made = await makeDeliverable(world.db, chain.mixer);
     const administrator = await makeMember(world.db, chain.supplier, ['administrator']);
     for (const scope of [administrator, chain.operator])
-      expect(codeOf(await createSubmissions(scope, [{ deliverableId: made.id, channelId: chain.channel.id, airAt: null }]))).toBe('forbidden');
-    const foreign = await createSubmissions(stranger.mixer, [{ deliverableId: made.id, channelId: chain.channel.id, airAt: null }]);
+      expect(
+        codeOf(
+          await createSubmissions(scope, [
+            { deliverableId: made.id, channelId: chain.channel.id, airAt: null },
+          ]),
+        ),
+      ).toBe('forbidden');
+    const foreign = await createSubmissions(stranger.mixer, [
+      { deliverableId: made.id, channelId: chain.channel.id, airAt: null },
+    ]);
     expect(codeOf(firstOf(foreign))).toBe('not_found');
   });
 });
@@ -201,20 +277,41 @@ describe('delivering again', () => {
   const episode = { programmeTitle: 'Small Gales', episodeLabel: '2.12' };
 
   it('replaces what awaits review of the same episode, and shows the change', async () => {
-    const first = await makeSubmitted(world.db, chain, { ...episode, figures: failing, airAt: '2026-12-05T09:00:00Z' });
+    const first = await makeSubmitted(world.db, chain, {
+      ...episode,
+      figures: failing,
+      airAt: '2026-12-05T09:00:00Z',
+    });
     const second = await makeSubmitted(world.db, chain, { ...episode, figures: passing });
     expect(await stateOf(first.id)).toEqual({ state: 'replaced', version: 2 });
     expect(await actionsOn(world.db, first.id)).toEqual(['submission.submitted', 'submission.replaced']);
     expect((await mailsAbout(world.db, first.id)).map((mail) => mail.state)).toEqual(['cancelled']);
-    const report = submissionReportSchema.parse(valueOf(await getSubmissionReport(chain.operator, second.id)));
-    expect(report.replaces).toEqual({ id: first.id, submittedAt: first.submittedAt, figures: failing, outcome: 'fail' });
+    const report = submissionReportSchema.parse(
+      valueOf(await getSubmissionReport(chain.operator, second.id)),
+    );
+    expect(report.replaces).toEqual({
+      id: first.id,
+      submittedAt: first.submittedAt,
+      figures: failing,
+      outcome: 'fail',
+    });
     expect(report.airAt).toBe('2026-12-05T09:00:00.000Z');
-    expect((await world.db('deliverables').where('id', second.deliverableId).first()).replaces_id).toBe(first.deliverableId);
+    expect((await world.db('deliverables').where('id', second.deliverableId).first()).replaces_id).toBe(
+      first.deliverableId,
+    );
   });
 
   it('is chained to a rejected delivery, which stays rejected', async () => {
     const first = await makeSubmitted(world.db, chain, episode);
-    await world.db('submissions').where('id', first.id).update({ state: 'rejected', decided_by: chain.operator.userId, decided_at: world.db.fn.now(), decision_reason: 'Too loud.' });
+    await world
+      .db('submissions')
+      .where('id', first.id)
+      .update({
+        state: 'rejected',
+        decided_by: chain.operator.userId,
+        decided_at: world.db.fn.now(),
+        decision_reason: 'Too loud.',
+      });
     const second = await makeSubmitted(world.db, chain, episode);
     expect((await stateOf(first.id)).state).toBe('rejected');
     expect(valueOf(await getSubmissionReport(chain.mixer, second.id)).replaces?.id).toBe(first.id);
@@ -269,14 +366,21 @@ describe('after submitting', () => {
     const { id } = await makeSubmitted(world.db, chain);
     expect(codeOf(await withdrawSubmission(stranger.mixer, id))).toBe('not_found');
     expect(codeOf(await withdrawSubmission(chain.operator, id))).toBe('forbidden');
-    expect(valueOf(await withdrawSubmission(chain.mixer, id))).toMatchObject({ state: 'withdrawn', version: 2 });
-    expect(refusalOf(await withdrawSubmission(chain.mixer, id))).toMatchObject({ code: 'conflict', message: expect.stringContaining('withdrawn') });
+    expect(valueOf(await withdrawSubmission(chain.mixer, id))).toMatchObject({
+      state: 'withdrawn',
+      version: 2,
+    });
+    expect(refusalOf(await withdrawSubmission(chain.mixer, id))).toMatchObject({
+      code: 'conflict',
+      message: expect.stringContaining('withdrawn'),
+    });
     expect(await actionsOn(world.db, id)).toEqual(['submission.submitted', 'submission.withdrawn']);
   });
 
   it('sets and clears the air date', async () => {
     const { id } = await makeSubmitted(world.db, chain);
-    const set = async (airAt: string | null) => valueOf(await setSubmissionAirDate(chain.mixer, id, airAt)).airAt;
+    const set = async (airAt: string | null) =>
+      valueOf(await setSubmissionAirDate(chain.mixer, id, airAt)).airAt;
     expect(await set('2026-12-05T09:00:00+01:00')).toBe('2026-12-05T08:00:00.000Z');
     expect(await set(null)).toBeNull();
     expect(codeOf(await setSubmissionAirDate(stranger.mixer, id, null))).toBe('not_found');
@@ -287,10 +391,16 @@ describe('after submitting', () => {
   it('takes notes of both sides, at times within the programme', async () => {
     const { id } = await makeSubmitted(world.db, chain);
     valueOf(await addNote(chain.operator, id, { text: 'Breath noise here.', atSeconds: 12.4 }));
-    const answer = valueOf(await addNote(chain.mixer, id, { text: 'Meant so by the director.', atSeconds: null }));
+    const answer = valueOf(
+      await addNote(chain.mixer, id, { text: 'Meant so by the director.', atSeconds: null }),
+    );
     const { notes } = submissionReportSchema.parse(valueOf(await getSubmissionReport(chain.mixer, id)));
     expect(notes).toMatchObject([
-      { author: { name: chain.operator.userName }, organisationName: chain.distributor.name, atSeconds: 12.4 },
+      {
+        author: { name: chain.operator.userName },
+        organisationName: chain.distributor.name,
+        atSeconds: 12.4,
+      },
       { author: { name: chain.mixer.userName }, organisationName: chain.supplier.name, atSeconds: null },
     ]);
     expect(notes[1]).toEqual(answer);

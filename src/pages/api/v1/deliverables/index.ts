@@ -3,7 +3,9 @@ import { deliverableQuerySchema, patchDeliverablesSchema } from '@/domain/api/de
 import { listDeliverables, patchDeliverables } from '@/server/services/deliverables.ts';
 
 /** A page of the organisation's deliverables. */
-export const GET = endpoint(async (context, scope) => listDeliverables(scope, query(context, deliverableQuerySchema)));
+export const GET = endpoint(async (context, scope) =>
+  listDeliverables(scope, query(context, deliverableQuerySchema)),
+);
 
 /** Details of many; one answer per item. */
 export const PATCH = endpoint(async (context, scope) => {

@@ -3,7 +3,9 @@ import { createSubmissionsSchema, submissionQuerySchema } from '@/domain/api/sub
 import { createSubmissions, listSubmissions } from '@/server/services/submissions.ts';
 
 /** A page of the submissions that the organisation is a side of: the distributor's queue, the supplier's own. */
-export const GET = endpoint(async (context, scope) => listSubmissions(scope, query(context, submissionQuerySchema)));
+export const GET = endpoint(async (context, scope) =>
+  listSubmissions(scope, query(context, submissionQuerySchema)),
+);
 
 /** Puts deliverables to channels; one answer per item. */
 export const POST = endpoint(async (context, scope) => {

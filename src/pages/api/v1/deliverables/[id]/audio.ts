@@ -5,5 +5,8 @@ import { getDeliverableAudio } from '@/server/services/passages.ts';
 export const GET = endpoint(async (context, scope) => {
   const audio = await getDeliverableAudio(scope, idParam(context));
   if (!audio.ok) return audio;
-  return new Response(null, { status: 302, headers: { location: audio.value.url, 'cache-control': 'no-store' } });
+  return new Response(null, {
+    status: 302,
+    headers: { location: audio.value.url, 'cache-control': 'no-store' },
+  });
 });

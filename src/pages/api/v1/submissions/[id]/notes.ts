@@ -3,4 +3,6 @@ import { noteSchema } from '@/domain/api/submissions.ts';
 import { addNote } from '@/server/services/submissions.ts';
 
 /** Adds a note that both sides read; answers it. */
-export const POST = endpoint(async (context, scope) => addNote(scope, idParam(context), await body(context, noteSchema)));
+export const POST = endpoint(async (context, scope) =>
+  addNote(scope, idParam(context), await body(context, noteSchema)),
+);
