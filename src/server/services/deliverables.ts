@@ -23,7 +23,7 @@ import {
 } from '../db/deliverables-repository.ts';
 import { listJudgedBodies } from '../db/judged-specs-repository.ts';
 import { listProgrammes as listProgrammeRecords } from '../db/programmes-repository.ts';
-import { lockDeliverable, listSubmissionsOfDeliverable } from '../db/submission-writes-repository.ts';
+import { lockDeliverable, listSubmissionsOfDeliverable } from '../db/submission-making-repository.ts';
 import { publishEvent } from '../events.ts';
 import { log } from '../log.ts';
 import { readProgress, type Progress } from '../queue/progress.ts';

@@ -12,12 +12,11 @@ import {
   listSubmissionsOfDeliverable,
   lockDeliverable,
   lockEpisode,
-  lockSubmission,
-  moveSubmission,
   setReplaces,
   type JudgedForChannel,
   type LockedDeliverable,
-} from '../db/submission-writes-repository.ts';
+} from '../db/submission-making-repository.ts';
+import { lockSubmission, moveSubmission } from '../db/submission-writes-repository.ts';
 import { findSubmission, type SubmissionRecord } from '../db/submissions-repository.ts';
 import { cancelMailAbout, queueMail } from '../mail/outbox.ts';
 import { done, refuse, type Answer } from '../refusals.ts';
