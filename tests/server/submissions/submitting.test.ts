@@ -8,7 +8,6 @@ import type { LiveEvent } from '../../../src/domain/api/people.ts';
 import { closeEventsHub, listenToEvents } from '../../../src/server/events-hub.ts';
 import { createSubmissions, getSubmissionReport } from '../../../src/server/services/submissions.ts';
 import {
-  figures,
   makeAgreement,
   makeAssignment,
   makeChain,
