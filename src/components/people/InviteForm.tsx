@@ -4,8 +4,10 @@ import { Controller, useForm } from 'react-hook-form';
 import type { z } from 'zod';
 import { inviteSchema } from '@/domain/api/people.ts';
 import type { Role } from '@/domain/vocabulary.ts';
-import { field, mainButton } from './look.ts';
-import { invite, RefusedCall, type Invitation } from './member-calls.ts';
+import { ApiProblem } from '@/components/live/api.ts';
+import { Field } from '@/components/look/Field.tsx';
+import { Notice } from '@/components/look/Notice.tsx';
+import { invite, type Invitation } from './member-calls.ts';
 import { RoleTicks } from './RoleTicks.tsx';
 
 interface Props {
@@ -26,7 +28,7 @@ export function InviteForm({ possible, onInvited }: Props) {
       onInvited(invitation);
     },
     onError: (error) => {
-      const fields = error instanceof RefusedCall ? error.fields : {};
+      const fields = error instanceof ApiProblem ? error.fields : {};
       if (fields.email) form.setError('email', { message: fields.email }, { shouldFocus: true });
       else if (fields.roles) form.setError('roles', { message: fields.roles });
       else form.setError('root', { message: error.message });
@@ -40,28 +42,14 @@ export function InviteForm({ possible, onInvited }: Props) {
       className="grid content-start gap-4"
       onSubmit={(event) => void form.handleSubmit((asked) => sending.mutate(asked))(event)}
     >
-      <h2 id="invite-head" className="text-lg font-semibold">
+      <h2 id="invite-head" className="text-[17px] font-semibold">
         Invite somebody
       </h2>
-      <div className="grid gap-1">
-        <label htmlFor="invite-email" className="text-sm font-medium">
-          E-mail
-        </label>
-        <input
-          id="invite-email"
-          type="email"
-          autoComplete="off"
-          className={`${field} ${errors.email ? 'border-hull' : 'border-muted'}`}
-          aria-invalid={errors.email ? true : undefined}
-          aria-describedby={errors.email ? 'invite-email-error' : undefined}
-          {...form.register('email')}
-        />
-        {errors.email && (
-          <p id="invite-email-error" className="text-sm text-hull">
-            {errors.email.message}
-          </p>
+      <Field label="E-mail" error={errors.email?.message}>
+        {(ids) => (
+          <input type="email" autoComplete="off" className="field" {...ids} {...form.register('email')} />
         )}
-      </div>
+      </Field>
       <Controller
         control={form.control}
         name="roles"
@@ -75,15 +63,11 @@ export function InviteForm({ possible, onInvited }: Props) {
           />
         )}
       />
-      {errors.root && (
-        <p role="alert" className="text-sm text-hull">
-          {errors.root.message}
-        </p>
-      )}
-      <button type="submit" className={`${mainButton} justify-self-start`} disabled={sending.isPending}>
+      {errors.root && <Notice tone="refused">{errors.root.message}</Notice>}
+      <button type="submit" className="btn btn-main justify-self-start" disabled={sending.isPending}>
         {sending.isPending ? 'Sending…' : 'Send the invitation'}
       </button>
-      <p className="text-sm text-muted">They get a mail with a link that works once, within a week.</p>
+      <p className="text-[13px] text-muted">They get a mail with a link that works once, within a week.</p>
     </form>
   );
 }

@@ -1,43 +1,13 @@
 import { useMutation } from '@tanstack/react-query';
-import { useState, type ReactNode } from 'react';
-import { Dialog, Heading, Modal, ModalOverlay } from 'react-aria-components';
+import { useState } from 'react';
+import { Dialog } from '@/components/look/Dialog.tsx';
+import { Notice } from '@/components/look/Notice.tsx';
 import type { Role } from '@/domain/vocabulary.ts';
-import { gravestButton, mainButton, plainButton } from './look.ts';
 import { removeMember, setRoles, type Member } from './member-calls.ts';
 import { RoleTicks } from './RoleTicks.tsx';
 
-interface FrameProps {
-  title: string;
-  onClose(): void;
-  children: ReactNode;
-}
-
-function Frame({ title, onClose, children }: FrameProps) {
-  return (
-    <ModalOverlay
-      isOpen
-      isDismissable
-      onOpenChange={(open) => !open && onClose()}
-      className="fixed inset-0 z-50 grid place-items-center bg-ink/40 p-4"
-    >
-      <Modal className="w-full max-w-md border border-hairline bg-sheet p-6 text-ink">
-        <Dialog className="grid gap-4 outline-none">
-          <Heading slot="title" className="text-lg font-semibold">
-            {title}
-          </Heading>
-          {children}
-        </Dialog>
-      </Modal>
-    </ModalOverlay>
-  );
-}
-
 const Refusal = ({ error }: { error: Error | null }) =>
-  error && (
-    <p role="alert" className="text-sm text-hull">
-      {error.message}
-    </p>
-  );
+  error && <Notice tone="refused">{error.message}</Notice>;
 
 interface DialogProps {
   member: Member;
@@ -58,7 +28,7 @@ export function RolesDialog({
     onSuccess: () => onDone(`${member.name}'s roles are changed. They count from the next page on.`),
   });
   return (
-    <Frame title={`Roles of ${member.name}`} onClose={onClose}>
+    <Dialog title={`Roles of ${member.name}`} onClose={onClose}>
       <RoleTicks
         idPrefix="roles"
         possible={possible}
@@ -70,17 +40,17 @@ export function RolesDialog({
       <div className="flex gap-3">
         <button
           type="button"
-          className={mainButton}
+          className="btn btn-main"
           disabled={picked.length === 0 || saving.isPending}
           onClick={() => saving.mutate()}
         >
           Save
         </button>
-        <button type="button" className={`${plainButton} h-9`} onClick={onClose}>
+        <button type="button" className="btn btn-quiet" onClick={onClose}>
           Cancel
         </button>
       </div>
-    </Frame>
+    </Dialog>
   );
 }
 
@@ -90,7 +60,7 @@ export function RemoveDialog({ member, onClose, onDone }: DialogProps) {
     onSuccess: () => onDone(`${member.name} is not a member any more.`),
   });
   return (
-    <Frame title={`Remove ${member.name}?`} onClose={onClose}>
+    <Dialog title={`Remove ${member.name}?`} onClose={onClose}>
       <p>
         Their sessions here end at once. What they uploaded, decided and noted stays under their name. To come
         back they need a new invitation.
@@ -99,16 +69,16 @@ export function RemoveDialog({ member, onClose, onDone }: DialogProps) {
       <div className="flex gap-3">
         <button
           type="button"
-          className={gravestButton}
+          className="btn border-hull text-hull"
           disabled={removing.isPending}
           onClick={() => removing.mutate()}
         >
           Remove
         </button>
-        <button type="button" className={`${plainButton} h-9`} onClick={onClose}>
+        <button type="button" className="btn btn-quiet" onClick={onClose}>
           Keep
         </button>
       </div>
-    </Frame>
+    </Dialog>
   );
 }

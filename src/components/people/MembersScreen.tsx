@@ -1,14 +1,9 @@
-import {
-  QueryClient,
-  QueryClientProvider,
-  useMutation,
-  useQuery,
-  useQueryClient,
-} from '@tanstack/react-query';
+import { useMutation, useQuery, useQueryClient } from '@tanstack/react-query';
 import { useState } from 'react';
+import { ApiProvider } from '@/components/live/ApiProvider.tsx';
+import { Notice } from '@/components/look/Notice.tsx';
 import { roleNames, type Role } from '@/domain/vocabulary.ts';
 import { InviteForm } from './InviteForm.tsx';
-import { plainButton } from './look.ts';
 import {
   endSessions,
   listMembers,
@@ -62,22 +57,15 @@ function Screen({ initial, possibleRoles, ownUserId, timeZone }: Props) {
   });
 
   return (
-    <div className="grid gap-10">
+    <div className="grid gap-8">
       {/* Always there, so that what is put into it is read out. */}
-      <p
-        role="status"
-        className={
-          said
-            ? `border-l-2 py-1 pl-3 ${said.isRefusal ? 'border-hull text-hull' : 'border-teal'}`
-            : 'sr-only'
-        }
-      >
-        {said?.text}
-      </p>
+      <div aria-live="polite" className="empty:hidden">
+        {said && <Notice tone={said.isRefusal ? 'refused' : 'told'}>{said.text}</Notice>}
+      </div>
       <div>
         <table className="w-full text-left">
           <caption className="sr-only">Members</caption>
-          <thead className="text-sm text-muted max-md:sr-only">
+          <thead className="text-[13px] text-muted max-md:sr-only">
             <tr>
               <th scope="col" className={`${cell} font-medium`}>
                 Name
@@ -102,18 +90,18 @@ function Screen({ initial, possibleRoles, ownUserId, timeZone }: Props) {
                 <th scope="row" className={`${cell} font-normal`}>
                   <span className="font-medium">{member.name}</span>
                   {member.userId === ownUserId && <span className="text-muted"> (you)</span>}
-                  <span className="block text-sm break-words text-muted">{member.email}</span>
+                  <span className="block text-[13px] break-words text-muted">{member.email}</span>
                 </th>
                 <td className={cell}>{rolesInWords(member.roles)}</td>
-                <td className={`${cell} font-mono text-sm max-md:hidden!`}>
+                <td className={`${cell} num max-md:hidden!`}>
                   {member.lastSeenAt ? moment.format(new Date(member.lastSeenAt)) : 'never'}
                 </td>
-                <td className={`${cell} font-mono text-sm max-md:hidden!`}>{member.openSessions}</td>
+                <td className={`${cell} num max-md:hidden!`}>{member.openSessions}</td>
                 <td className={`${cell} pr-0`}>
                   <div className="flex flex-wrap gap-2 md:flex-nowrap md:justify-end">
                     <button
                       type="button"
-                      className={plainButton}
+                      className="btn btn-quiet"
                       aria-label={`Roles of ${member.name}`}
                       onClick={() => setOpen({ what: 'roles', member })}
                     >
@@ -121,7 +109,7 @@ function Screen({ initial, possibleRoles, ownUserId, timeZone }: Props) {
                     </button>
                     <button
                       type="button"
-                      className={plainButton}
+                      className="btn btn-quiet"
                       aria-label={`End the sessions of ${member.name}`}
                       disabled={ending.isPending || member.openSessions === 0}
                       onClick={() => ending.mutate(member)}
@@ -130,7 +118,7 @@ function Screen({ initial, possibleRoles, ownUserId, timeZone }: Props) {
                     </button>
                     <button
                       type="button"
-                      className={plainButton}
+                      className="btn btn-quiet"
                       aria-label={`Remove ${member.name}`}
                       onClick={() => setOpen({ what: 'remove', member })}
                     >
@@ -149,7 +137,7 @@ function Screen({ initial, possibleRoles, ownUserId, timeZone }: Props) {
           onInvited={({ email }) => tell(`An invitation is on its way to ${email}.`)}
         />
         <section aria-labelledby="open-head" className="grid content-start gap-2">
-          <h2 id="open-head" className="text-lg font-semibold">
+          <h2 id="open-head" className="text-[17px] font-semibold">
             Open invitations
           </h2>
           {data.invitations.length === 0 && <p className="text-muted">Nobody is invited at the moment.</p>}
@@ -161,13 +149,13 @@ function Screen({ initial, possibleRoles, ownUserId, timeZone }: Props) {
               >
                 <span>
                   <span className="break-words">{invitation.email}</span>
-                  <span className="block text-sm text-muted">
+                  <span className="block text-[13px] text-muted">
                     {rolesInWords(invitation.roles)}, until {moment.format(new Date(invitation.expiresAt))}
                   </span>
                 </span>
                 <button
                   type="button"
-                  className={plainButton}
+                  className="btn btn-quiet"
                   aria-label={`Take back the invitation of ${invitation.email}`}
                   disabled={takingBack.isPending}
                   onClick={() => takingBack.mutate(invitation)}
@@ -196,10 +184,9 @@ function Screen({ initial, possibleRoles, ownUserId, timeZone }: Props) {
 
 /** Members of the organisation with what an administrator does about them. */
 export default function MembersScreen(props: Props) {
-  const [client] = useState(() => new QueryClient({ defaultOptions: { queries: { staleTime: 30_000 } } }));
   return (
-    <QueryClientProvider client={client}>
+    <ApiProvider>
       <Screen {...props} />
-    </QueryClientProvider>
+    </ApiProvider>
   );
 }

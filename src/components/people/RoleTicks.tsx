@@ -1,5 +1,4 @@
 import { roleNames, type Role } from '@/domain/vocabulary.ts';
-import { tick } from './look.ts';
 
 const work: Record<Role, string> = {
   mix_engineer: 'uploads, submits, withdraws and delivers again',
@@ -27,24 +26,24 @@ export function RoleTicks({ possible, picked, onChange, error, idPrefix }: Props
     );
   return (
     <fieldset aria-describedby={error ? `${idPrefix}-error` : undefined}>
-      <legend className="mb-1 text-sm font-medium">Roles</legend>
+      <legend className="mb-1 text-[13px] font-medium">Roles</legend>
       <div className="grid gap-1.5">
         {possible.map((role) => (
           <label key={role} className="flex items-baseline gap-2">
             <input
               type="checkbox"
-              className={`${tick} translate-y-0.5`}
+              className="translate-y-0.5"
               checked={picked.includes(role)}
               onChange={() => toggle(role)}
             />
             <span>
-              {roleNames[role]} <span className="text-sm text-muted">{work[role]}</span>
+              {roleNames[role]} <span className="text-[13px] text-muted">{work[role]}</span>
             </span>
           </label>
         ))}
       </div>
       {error && (
-        <p id={`${idPrefix}-error`} className="mt-1 text-sm text-hull">
+        <p id={`${idPrefix}-error`} className="mt-1 text-[13px] text-hull">
           {error}
         </p>
       )}
