@@ -1,7 +1,7 @@
 import { useId } from 'react';
 import { formatLevel } from '@/domain/figures-text.ts';
 import type { Outcome } from '@/domain/vocabulary.ts';
-import { scaleOf, type Limits } from './load-line-scale.ts';
+import { placeOn, scaleOf, type Limits } from './load-line-scale.ts';
 
 interface Props extends Limits {
   /** Key of the metric, which chooses the scale. */
@@ -31,11 +31,11 @@ export function LoadLine({
 }: Props) {
   const hatch = useId();
   const height = size === 'cell' ? 18 : 26;
-  const { min, max, ticks } = scaleOf(metric, { atLeast, atMost }, size);
+  const scale = scaleOf(metric, { atLeast, atMost }, size);
+  const { min, max, ticks } = scale;
   const deck = Math.round(height * 0.48) + 0.5;
   const keel = Math.round(height * 0.86) + 0.5;
-  const place = (v: number) =>
-    v > max ? width - 9 : v < min ? 9 : 2 + ((width - 4) * (v - min)) / (max - min);
+  const place = (v: number) => placeOn(scale, v, width);
   const left = atLeast === null ? 0 : place(atLeast);
   const right = atMost === null ? width : place(atMost);
   const over = value !== null && atMost !== null && value > atMost;

@@ -55,3 +55,7 @@ export function scaleOf(metric: string, limits: Limits, size: 'cell' | 'row'): S
   [min, max] = [round(min), round(max)];
   return { min, max, ticks: ticksOf(min, max, limits) };
 }
+
+/** Where a value stands on a scale drawn `width` wide; what is off it stands at the end, short of the chevron. */
+export const placeOn = ({ min, max }: Scale, value: number, width: number): number =>
+  value > max ? width - 9 : value < min ? 9 : 2 + ((width - 4) * (value - min)) / (max - min);
