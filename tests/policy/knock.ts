@@ -94,3 +94,16 @@ export async function askPastTheDoor(file: string, asked: Knock, scope: MemberSc
   context.locals.scope = scope;
   return (await handlerOf(file, asked.method))(context);
 }
+
+/** Through the door and into a page that `draw` draws, with what middleware put into its locals. */
+export async function answerOfPage(
+  asked: Knock,
+  draw: (context: APIContext) => Promise<Response>,
+): Promise<Response> {
+  const context = contextOf(asked);
+  const next: MiddlewareNext = (instead) =>
+    instead === '/403' ? Promise.resolve(new Response(null, { status: 403 })) : draw(context);
+  const response = await onRequest(context, next);
+  if (!response) throw new Error('middleware gave no answer');
+  return response;
+}

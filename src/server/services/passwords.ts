@@ -67,17 +67,19 @@ export async function readResetLink(token: string): Promise<Answer<{ email: stri
 
 /** Sets the new password, uses the link up, and ends every session of the person. */
 export async function resetPassword(token: string, password: string): Promise<Answer<{ email: string }>> {
-  if (!tokenPattern.test(token)) return linkIsDead;
   const parsed = passwordSchema.safeParse(password);
   if (!parsed.success) {
     const message = parsed.error.issues[0]?.message ?? 'Choose another password.';
     return refuse('bad_input', message, { password: message });
   }
+  // Hashing is dear on purpose: not for a link that is dead anyway.
+  const link = await readResetLink(token);
+  if (!link.ok) return link;
   const passwordHash = await hashPassword(parsed.data);
   return inTransaction(async (trx) => {
-    const link = await takeLink(trx, scope, 'password_reset', hashOfToken(token));
-    if (!link?.userId) return linkIsDead;
-    const user = await findUser(trx, scope, link.userId);
+    const taken = await takeLink(trx, scope, 'password_reset', hashOfToken(token));
+    if (!taken?.userId) return linkIsDead;
+    const user = await findUser(trx, scope, taken.userId);
     if (!user) return linkIsDead;
     await setPassword(trx, scope, user.id, passwordHash);
     await revokeSessionsOf(trx, scope, user.id);
