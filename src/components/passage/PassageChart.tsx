@@ -1,0 +1,187 @@
+import {
+  Chart as ChartJs,
+  Decimation,
+  Filler,
+  LinearScale,
+  LineController,
+  LineElement,
+  PointElement,
+  type ChartOptions,
+} from 'chart.js';
+import zoom from 'chartjs-plugin-zoom';
+import { useEffect, useMemo, useRef, useState, type KeyboardEvent } from 'react';
+import { Line } from 'react-chartjs-2';
+import type { Passage } from '@/domain/api/deliverables.ts';
+import { formatDuration, formatTimecode } from '@/domain/figures-text.ts';
+import { readColours, type Colours } from './colours.ts';
+import { passageDrawing, peakBand, type Draught, type Drawn } from './drawing.ts';
+
+ChartJs.register(LineController, LineElement, PointElement, LinearScale, Filler, Decimation, zoom);
+
+interface Props {
+  passage: Passage;
+  draughts: Draught[];
+  /** Seconds shown, from the address; `null`: all. */
+  shown: [number, number] | null;
+  onShown?: (range: [number, number] | null) => void;
+  current: number | null;
+  onCurrent?: (number: number) => void;
+  onPlayFrom?: (seconds: number) => void;
+  playing?: number | null;
+  height?: number;
+}
+
+const lowest = -48;
+const points = (values: readonly (number | null)[], step: number) =>
+  values.map((y, i) => ({ x: (i + 1) * step, y: y === null ? NaN : Math.max(y, lowest) }));
+
+/** Loudness over time: short-term as water, momentary a faint line, true peak hanging from above, limits as draught marks. */
+export function PassageChart({
+  passage,
+  draughts,
+  shown,
+  onShown,
+  current,
+  onCurrent,
+  onPlayFrom,
+  playing = null,
+  height = 340,
+}: Props) {
+  const [colours, setColours] = useState<Colours | null>(null);
+  const chart = useRef<ChartJs<'line'> | null>(null);
+  const length = passage.truePeakDbtp.length * passage.stepSeconds;
+  const drawn = useRef<Drawn | null>(null);
+
+  useEffect(() => {
+    const read = () => setColours(readColours());
+    read();
+    addEventListener('plimsoll-theme', read);
+    return () => removeEventListener('plimsoll-theme', read);
+  }, []);
+  const drawing = useMemo(
+    () =>
+      passageDrawing(
+        () => drawn.current ?? { passage, draughts, colours: readColours(), current: null, playing: null },
+      ),
+    [passage, draughts],
+  );
+  useEffect(() => {
+    if (colours) drawn.current = { passage, draughts, colours, current, playing };
+    chart.current?.draw();
+  }, [passage, draughts, colours, current, playing]);
+
+  const data = useMemo(
+    () => ({
+      datasets: [
+        {
+          data: points(passage.momentaryLufs, passage.stepSeconds),
+          borderColor: colours?.['water-line'],
+          borderWidth: 0.8,
+          pointRadius: 0,
+          order: 2,
+        },
+        {
+          data: points(passage.shortTermLufs, passage.stepSeconds),
+          borderColor: colours?.teal,
+          backgroundColor: colours?.water,
+          fill: 'start',
+          borderWidth: 1.6,
+          pointRadius: 0,
+          order: 3,
+        },
+      ],
+    }),
+    [passage, colours],
+  );
+  const top = Math.max(-6, ...draughts.filter((d) => d.of !== 'truePeak').map((d) => d.value + 5));
+  const options = useMemo<ChartOptions<'line'>>(
+    () => ({
+      parsing: false,
+      normalized: true,
+      animation: false,
+      maintainAspectRatio: false,
+      events: [],
+      layout: { padding: { top: peakBand + 4, right: 66, bottom: 34, left: 2 } },
+      scales: {
+        x: {
+          type: 'linear',
+          min: shown?.[0] ?? 0,
+          max: shown?.[1] ?? length,
+          grid: { display: false },
+          border: { color: colours?.ink },
+          ticks: {
+            color: colours?.muted,
+            maxRotation: 0,
+            autoSkipPadding: 24,
+            font: { family: '"Sometype Mono Variable"', size: 11 },
+            callback: (value) => formatDuration(Number(value)),
+          },
+        },
+        y: { min: lowest, max: top, display: false, ticks: { stepSize: 6 } },
+      },
+      plugins: {
+        decimation: { enabled: true, algorithm: 'min-max' },
+        zoom: {
+          limits: { x: { min: 0, max: length, minRange: 2 } },
+          pan: {
+            enabled: true,
+            mode: 'x',
+            onPanComplete: ({ chart: c }) => onShown?.([c.scales.x.min, c.scales.x.max]),
+          },
+          zoom: {
+            wheel: { enabled: true, speed: 0.08 },
+            pinch: { enabled: true },
+            mode: 'x',
+            onZoomComplete: ({ chart: c }) => onShown?.([c.scales.x.min, c.scales.x.max]),
+          },
+        },
+      },
+    }),
+    // What is shown is set once; from then on the chart's own zoom holds it.
+    // eslint-disable-next-line react-hooks/exhaustive-deps
+    [colours, length, top],
+  );
+  const onKeyDown = (event: KeyboardEvent) => {
+    const flags = passage.excursions;
+    const at = flags.findIndex((flag) => flag.number === current);
+    if (event.key === 'ArrowRight' || event.key === 'ArrowLeft') {
+      event.preventDefault();
+      const next = flags[Math.min(flags.length - 1, Math.max(0, at + (event.key === 'ArrowRight' ? 1 : -1)))];
+      if (next) onCurrent?.(next.number);
+    } else if (event.key === 'Enter') {
+      event.preventDefault();
+      onPlayFrom?.(Math.max(0, (flags[at]?.startSeconds ?? 0) - 1));
+    } else if (event.key === 'Escape') {
+      chart.current?.resetZoom();
+      onShown?.(null);
+    } else if (event.key === '+' || event.key === '-') chart.current?.zoom(event.key === '+' ? 1.3 : 0.77);
+  };
+  const label = `Loudness over ${formatTimecode(length)}; ${passage.excursions.length === 0 ? 'no limit is passed' : `${passage.excursions.length} excursions, listed beneath`}. Arrow keys move by excursion, Enter plays from there.`;
+  return (
+    // The chart is one composite control: its flags are walked by key and listed as text beneath it.
+    // eslint-disable-next-line jsx-a11y/no-noninteractive-element-interactions, jsx-a11y/no-noninteractive-tabindex
+    <div
+      role="application"
+      aria-label={label}
+      tabIndex={0}
+      onKeyDown={onKeyDown}
+      style={{ height }}
+      className="relative"
+    >
+      {colours && (
+        <Line
+          ref={(made) => {
+            chart.current = made ?? null;
+          }}
+          data={data}
+          options={options}
+          plugins={[drawing]}
+          onDoubleClick={(event) => {
+            const x = chart.current?.scales.x.getValueForPixel(event.nativeEvent.offsetX);
+            if (x !== undefined) onPlayFrom?.(Math.max(0, x));
+          }}
+        />
+      )}
+    </div>
+  );
+}

@@ -1,0 +1,127 @@
+import { Figure } from '@/components/look/Figure.tsx';
+import type { DeliverableReport } from '@/domain/api/deliverables.ts';
+import { formatBytes, formatRate, formatTimecode } from '@/domain/figures-text.ts';
+
+type Measured = NonNullable<DeliverableReport['measurement']>;
+interface Props {
+  measurement: Measured;
+  fileName: string;
+  byteSize?: number;
+  sha256: string | null;
+}
+
+const Row = ({ name, children }: { name: string; children: React.ReactNode }) => (
+  <>
+    <dt className="text-muted">{name}</dt>
+    <dd className="text-right">{children}</dd>
+  </>
+);
+
+const at = (seconds: number | null) =>
+  seconds !== null && <span className="num text-[12px] text-muted"> at {formatTimecode(seconds)}</span>;
+
+/** Every figure and fact that stands, whatever a spec asks. */
+export function FactsSheet({ measurement, fileName, byteSize, sha256 }: Props) {
+  const { format: f, figures, findings } = measurement;
+  const { loudness: l, times } = figures;
+  const list = 'grid grid-cols-[auto_1fr] gap-x-4 gap-y-1 text-[13px]';
+  return (
+    <div className="grid gap-5">
+      <section className="sheet p-4">
+        <h2 className="mb-2 text-[13px] font-semibold">Figures</h2>
+        <dl className={list}>
+          <Row name="Integrated loudness">
+            <Figure value={l.integratedLufs} unit="LUFS" />
+          </Row>
+          {l.dualMonoIntegratedLufs !== undefined && (
+            <Row name="  as dual mono">
+              <Figure value={l.dualMonoIntegratedLufs} unit="LUFS" />
+            </Row>
+          )}
+          <Row name="Relative gate">
+            <Figure value={l.relativeThresholdLufs} unit="LUFS" />
+          </Row>
+          <Row name="Loudness range">
+            {figures.measuredSeconds < 60 && (
+              <span className="text-[12px] text-muted">short for a range </span>
+            )}
+            <Figure value={l.rangeLu} unit="LU" />
+          </Row>
+          <Row name="  from, to">
+            <Figure value={l.rangeLowLufs} unit="LUFS" /> to <Figure value={l.rangeHighLufs} unit="LUFS" />
+          </Row>
+          <Row name="Maximum short-term">
+            <Figure value={l.shortTermMaxLufs} unit="LUFS" />
+            {at(times.shortTermMaxAtSeconds)}
+          </Row>
+          <Row name="Maximum momentary">
+            <Figure value={l.momentaryMaxLufs} unit="LUFS" />
+            {at(times.momentaryMaxAtSeconds)}
+          </Row>
+          <Row name="Maximum true peak">
+            <Figure value={figures.truePeak.maxDbtp} unit="dBTP" />
+            {at(times.truePeakMaxAtSeconds)}
+          </Row>
+          <Row name="Maximum sample peak">
+            <Figure value={figures.samplePeak.maxDbfs} unit="dBFS" />
+          </Row>
+          <Row name="True peak by audio channel">
+            <span className="num">
+              {figures.truePeak.perChannelDbtp.map((peak, i) => (
+                <span key={i}>
+                  {i > 0 && ' / '}
+                  <Figure value={peak} />
+                </span>
+              ))}
+            </span>
+          </Row>
+        </dl>
+      </section>
+      <section className="sheet p-4">
+        <h2 className="mb-2 text-[13px] font-semibold">The file</h2>
+        <dl className={list}>
+          <Row name="Name">
+            <span className="num break-all">{fileName}</span>
+          </Row>
+          <Row name="Container, codec">
+            {f.container}, {f.codec}
+          </Row>
+          <Row name="Sample rate, depth">
+            {formatRate(f.sampleRateHz)}
+            {f.bitDepth !== null && `, ${f.bitDepth} bit`}
+          </Row>
+          <Row name="Layout">
+            {f.layout} ({f.channels})
+          </Row>
+          <Row name="Duration">
+            <span className="num">{formatTimecode(f.durationSeconds)}</span>
+          </Row>
+          {byteSize !== undefined && <Row name="Size">{formatBytes(byteSize)}</Row>}
+          <Row name="Engine">
+            <span className="num">{measurement.engineVersion}</span>
+          </Row>
+          {sha256 && (
+            <Row name="SHA-256">
+              <span className="num text-[11.5px] break-all">{sha256}</span>
+            </Row>
+          )}
+        </dl>
+      </section>
+      {findings.length > 0 && (
+        <section className="sheet p-4">
+          <h2 className="mb-2 text-[13px] font-semibold">Findings</h2>
+          <ul className="grid gap-2 text-[13px]">
+            {findings.map((finding, i) => (
+              <li key={i}>
+                {finding.message}
+                {finding.atSeconds !== undefined && (
+                  <span className="num text-muted"> {formatTimecode(finding.atSeconds)}</span>
+                )}
+              </li>
+            ))}
+          </ul>
+        </section>
+      )}
+    </div>
+  );
+}
