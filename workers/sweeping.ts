@@ -1,4 +1,5 @@
 // Entry point: every 15 seconds, what fell between is found and set going again.
+import { config } from '../src/server/config.ts';
 import { closeDb } from '../src/server/db/connection.ts';
 import { log } from '../src/server/log.ts';
 import { closeMeasuringQueue } from '../src/server/queue/measuring-queue.ts';
@@ -6,6 +7,9 @@ import { closeRedis } from '../src/server/redis.ts';
 import { sweep } from '../src/server/services/sweeping.ts';
 
 const everyMilliseconds = 15_000;
+
+// A fault of the configuration ends this here, named, rather than every round.
+config();
 
 let wake = () => {};
 let leaving = false;
