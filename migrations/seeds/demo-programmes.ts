@@ -74,7 +74,10 @@ export const deliverables: DemoDeliverable[] = [
   tallow(1, 'stereo', { targetLufs: -23.1, then: 'approve' }),
   tallow(1, '5.1', { targetLufs: -22.8, then: 'approve' }),
   tallow(2, 'stereo', { targetLufs: -23.3 }),
-  tallow(2, '5.1', { over: { audioChannel: 2, truePeakDbtp: -0.4, at: 0.4 }, then: { waive: 'One over of a few milliseconds, inaudible; cleared with the producer.' } }),
+  tallow(2, '5.1', {
+    over: { audioChannel: 2, truePeakDbtp: -0.4, at: 0.4 },
+    then: { waive: 'One over of a few milliseconds, inaudible; cleared with the producer.' },
+  }),
   tallow(3, 'stereo', { seconds: 75, quietPassageDb: 22, targetLufs: -23 }),
   tallow(3, '5.1', { targetLufs: -23.2 }),
   tallow(5, 'stereo', { targetLufs: -22.9 }),
@@ -89,7 +92,16 @@ export const deliverables: DemoDeliverable[] = [
     [
       ['2.10', { targetLufs: -23.3, then: 'approve' }],
       ['2.11', { seconds: 64, quietPassageDb: 16, targetLufs: -22.8 }],
-      ['2.12', { targetLufs: -19.4, then: { reject: 'Loud by more than 3 LU from the first scene on. Bring the whole mix down; the peaks are fine.' } }],
+      [
+        '2.12',
+        {
+          targetLufs: -19.4,
+          then: {
+            reject:
+              'Loud by more than 3 LU from the first scene on. Bring the whole mix down; the peaks are fine.',
+          },
+        },
+      ],
     ] as [string, Partial<DemoDeliverable>][]
   ).map(([episode, rest]): DemoDeliverable => ({
     by: rooks,
@@ -153,7 +165,10 @@ export const deliverables: DemoDeliverable[] = [
   spot(5, kettle, { sampleRateHz: 44100 }),
   spot(6, kettle, { targetLufs: -22.7 }),
   spot(7, fennel, {}),
-  spot(8, fennel, { targetLufs: -21.9, then: { reject: 'Over target by more than a decibel: Harrow holds adverts to half.' } }),
+  spot(8, fennel, {
+    targetLufs: -21.9,
+    then: { reject: 'Over target by more than a decibel: Harrow holds adverts to half.' },
+  }),
   spot(9, fennel, { over: { audioChannel: 0, truePeakDbtp: 0.8, at: 0.3 } }),
   spot(10, fennel, { targetLufs: -23.1 }),
   spot(11, fennel, { targetLufs: -23 }),

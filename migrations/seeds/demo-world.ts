@@ -2,7 +2,6 @@
 import type { SpecBody } from '../../src/domain/spec.ts';
 import type { ChannelKind, ContentKind, Role } from '../../src/domain/vocabulary.ts';
 
-export { demoPassword, demoSignIns } from '../../src/server/auth/demo-sign-ins.ts';
 
 interface DemoOrganisation {
   slug: string;
@@ -46,21 +45,50 @@ export const organisations: DemoOrganisation[] = [
     slug: 'two-rooks-studio',
     name: 'Two Rooks Studio',
     isSupplier: true,
-    people: [{ email: 'mix@tworooks.example', name: 'Idris Fennimore', roles: ['mix_engineer', 'administrator'] }],
+    people: [
+      { email: 'mix@tworooks.example', name: 'Idris Fennimore', roles: ['mix_engineer', 'administrator'] },
+    ],
   },
   {
     slug: 'fennel-lane-mixes',
     name: 'Fennel Lane Mixes',
     isSupplier: true,
-    people: [{ email: 'mix@fennellane.example', name: 'Tamsin Vayle', roles: ['mix_engineer', 'administrator'] }],
+    people: [
+      { email: 'mix@fennellane.example', name: 'Tamsin Vayle', roles: ['mix_engineer', 'administrator'] },
+    ],
   },
 ];
 
-const r128 = { document: 'EBU R 128', edition: 'V5, November 2023', note: "Tolerance is the channel's own. Check against the receiving party's own document." };
+const r128 = {
+  document: 'EBU R 128',
+  edition: 'V5, November 2023',
+  note: "Tolerance is the channel's own. Check against the receiving party's own document.",
+};
 const file = (layouts: string[]): SpecBody['rules'] => [
-  { id: 'sample-rate', kind: 'oneOf', fact: 'sampleRateHz', allowed: ['48000'], breach: 'reject', measurementTolerance: 0 },
-  { id: 'bit-depth', kind: 'oneOf', fact: 'bitDepth', allowed: ['24'], breach: 'reject', measurementTolerance: 0 },
-  { id: 'layout', kind: 'oneOf', fact: 'layout', allowed: layouts, breach: 'reject', measurementTolerance: 0 },
+  {
+    id: 'sample-rate',
+    kind: 'oneOf',
+    fact: 'sampleRateHz',
+    allowed: ['48000'],
+    breach: 'reject',
+    measurementTolerance: 0,
+  },
+  {
+    id: 'bit-depth',
+    kind: 'oneOf',
+    fact: 'bitDepth',
+    allowed: ['24'],
+    breach: 'reject',
+    measurementTolerance: 0,
+  },
+  {
+    id: 'layout',
+    kind: 'oneOf',
+    fact: 'layout',
+    allowed: layouts,
+    breach: 'reject',
+    measurementTolerance: 0,
+  },
 ];
 const integrated = (targetLufs: number, above: number, below: number): SpecBody['rules'][number] => ({
   id: 'integrated',
@@ -97,7 +125,12 @@ export const specs: { organisation: string; key: string; name: string; body: Spe
       rounding: 'shown',
       mono: 'asOne',
       source: r128,
-      rules: [integrated(-23, 0.5, 0.5), atMost('true-peak', 'truePeakDbtp', -1, 'reject'), atMost('range', 'rangeLu', 18, 'advise'), ...file(['stereo', '5.1'])],
+      rules: [
+        integrated(-23, 0.5, 0.5),
+        atMost('true-peak', 'truePeakDbtp', -1, 'reject'),
+        atMost('range', 'rangeLu', 18, 'advise'),
+        ...file(['stereo', '5.1']),
+      ],
     },
   },
   {
@@ -144,12 +177,30 @@ export const specs: { organisation: string; key: string; name: string; body: Spe
       unit: 'LUFS',
       rounding: 'shown',
       mono: 'asDual',
-      source: { document: 'AES TD1008', edition: 'v3.13, September 2021', note: "Speech not measured apart. Check against the receiving party's own document." },
+      source: {
+        document: 'AES TD1008',
+        edition: 'v3.13, September 2021',
+        note: "Speech not measured apart. Check against the receiving party's own document.",
+      },
       rules: [
         integrated(-18, 1, 1),
         atMost('true-peak', 'truePeakDbtp', -1, 'reject'),
-        { id: 'sample-rate', kind: 'oneOf', fact: 'sampleRateHz', allowed: ['44100', '48000'], breach: 'reject', measurementTolerance: 0 },
-        { id: 'layout', kind: 'oneOf', fact: 'layout', allowed: ['mono', 'stereo'], breach: 'reject', measurementTolerance: 0 },
+        {
+          id: 'sample-rate',
+          kind: 'oneOf',
+          fact: 'sampleRateHz',
+          allowed: ['44100', '48000'],
+          breach: 'reject',
+          measurementTolerance: 0,
+        },
+        {
+          id: 'layout',
+          kind: 'oneOf',
+          fact: 'layout',
+          allowed: ['mono', 'stereo'],
+          breach: 'reject',
+          measurementTolerance: 0,
+        },
       ],
     },
   },

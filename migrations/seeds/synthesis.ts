@@ -87,7 +87,8 @@ function voice(samples: number, sampleRateHz: number, seed: number, pitchHz: num
         const breath = (roll() - 0.5) * (voiced ? 0.02 : 0.22);
         const rise = Math.min(1, i / (0.02 * sampleRateHz), (length - i) / (0.04 * sampleRateHz));
         const source = (pulse + breath) * rise * level;
-        out[at] = formants[0].step(source) * 3 + formants[1].step(source) * 1.6 + formants[2].step(source) * 0.9;
+        out[at] =
+          formants[0].step(source) * 3 + formants[1].step(source) * 1.6 + formants[2].step(source) * 0.9;
       }
     }
     at += Math.round((0.25 + roll() * 0.6) * sampleRateHz);
@@ -96,14 +97,23 @@ function voice(samples: number, sampleRateHz: number, seed: number, pitchHz: num
 }
 
 /** Slow chords of four partials each, one every `chordSeconds`, with a soft attack. */
-function chords(samples: number, sampleRateHz: number, seed: number, chordSeconds: number, rootHz: number): Float64Array {
+function chords(
+  samples: number,
+  sampleRateHz: number,
+  seed: number,
+  chordSeconds: number,
+  rootHz: number,
+): Float64Array {
   const roll = dice(seed);
   const out = new Float64Array(samples);
   const steps = [0, 3, 5, 7, 8, 10];
   const length = Math.round(chordSeconds * sampleRateHz);
   for (let start = 0; start < samples; start += length) {
     const root = rootHz * 2 ** (steps[Math.floor(roll() * steps.length)] / 12);
-    const tones = [1, 1.5, 2, 2.5].map((ratio) => ({ w: (2 * Math.PI * root * ratio) / sampleRateHz, p: roll() * 6.28 }));
+    const tones = [1, 1.5, 2, 2.5].map((ratio) => ({
+      w: (2 * Math.PI * root * ratio) / sampleRateHz,
+      p: roll() * 6.28,
+    }));
     const end = Math.min(samples, start + length + Math.round(0.4 * sampleRateHz));
     for (let i = start; i < end; i++) {
       const t = (i - start) / sampleRateHz;
@@ -134,7 +144,10 @@ function ambience(samples: number, sampleRateHz: number, seed: number): Float64A
   return out;
 }
 
-const mixes: Record<Character, { voice: number; music: number; room: number; chordSeconds: number; rootHz: number; pitchHz: number }> = {
+const mixes: Record<
+  Character,
+  { voice: number; music: number; room: number; chordSeconds: number; rootHz: number; pitchHz: number }
+> = {
   drama: { voice: 1, music: 0.35, room: 0.5, chordSeconds: 2.4, rootHz: 110, pitchHz: 118 },
   children: { voice: 1, music: 0.55, room: 0.15, chordSeconds: 0.8, rootHz: 196, pitchHz: 210 },
   talk: { voice: 1, music: 0.08, room: 0.08, chordSeconds: 3, rootHz: 98, pitchHz: 128 },
@@ -149,7 +162,9 @@ export function synthesise(score: Score): Float64Array[] {
   const speech = voice(samples, rate, score.seed, mix.pitchHz);
   const left = chords(samples, rate, score.seed + 1, mix.chordSeconds, mix.rootHz);
   const right = chords(samples, rate, score.seed + 1, mix.chordSeconds, mix.rootHz * 1.002);
-  const rooms = Array.from({ length: score.layout === '5.1' ? 4 : 2 }, (_, i) => ambience(samples, rate, score.seed + 10 + i));
+  const rooms = Array.from({ length: score.layout === '5.1' ? 4 : 2 }, (_, i) =>
+    ambience(samples, rate, score.seed + 10 + i),
+  );
   const add = (...parts: [Float64Array, number][]) => {
     const out = new Float64Array(samples);
     for (const [part, gain] of parts) for (let i = 0; i < samples; i++) out[i] += part[i] * gain;
@@ -167,7 +182,10 @@ export function synthesise(score: Score): Float64Array[] {
             add([left, mix.music], [rooms[0], mix.room]),
             add([right, mix.music], [rooms[1], mix.room]),
             add([speech, mix.voice]),
-            add([chords(samples, rate, score.seed + 2, mix.chordSeconds * 2, mix.rootHz / 2), mix.music * 0.5]),
+            add([
+              chords(samples, rate, score.seed + 2, mix.chordSeconds * 2, mix.rootHz / 2),
+              mix.music * 0.5,
+            ]),
             add([rooms[2], mix.room * 0.8], [left, mix.music * 0.2]),
             add([rooms[3], mix.room * 0.8], [right, mix.music * 0.2]),
           ];
@@ -181,8 +199,16 @@ function shape(planar: Float64Array[], score: Score): void {
     const gain = 10 ** (db / 20);
     const edge = 0.2 * score.sampleRateHz;
     for (const audioChannel of planar)
-      for (let i = Math.round(from * score.sampleRateHz); i < Math.min(audioChannel.length, to * score.sampleRateHz); i++) {
-        const inside = Math.min(1, (i - from * score.sampleRateHz) / edge, (to * score.sampleRateHz - i) / edge);
+      for (
+        let i = Math.round(from * score.sampleRateHz);
+        i < Math.min(audioChannel.length, to * score.sampleRateHz);
+        i++
+      ) {
+        const inside = Math.min(
+          1,
+          (i - from * score.sampleRateHz) / edge,
+          (to * score.sampleRateHz - i) / edge,
+        );
         audioChannel[i] *= 1 + (gain - 1) * inside;
       }
   };
@@ -217,7 +243,13 @@ export function limit(planar: Float64Array[], ceilingDbfs: number, sampleRateHz:
  * Puts a 6 ms burst at a quarter of the sample rate, 45 degrees off the samples, into one audio channel: its true peak
  * stands 3 dB above its samples (EBU Tech 3341, signal 16), here at `truePeakDbtp`.
  */
-export function addOver(planar: Float64Array[], audioChannel: number, atSeconds: number, truePeakDbtp: number, sampleRateHz: number): void {
+export function addOver(
+  planar: Float64Array[],
+  audioChannel: number,
+  atSeconds: number,
+  truePeakDbtp: number,
+  sampleRateHz: number,
+): void {
   const start = Math.round(atSeconds * sampleRateHz);
   const length = Math.round(0.006 * sampleRateHz);
   const amplitude = 10 ** (truePeakDbtp / 20);

@@ -45,11 +45,10 @@ function step(name, args) {
     env: { ...process.env, NODE_ENV: 'production', ASTRO_TELEMETRY_DISABLED: '1' },
   });
   if (ran.status === 0) return;
-  console.error(`${name} failed:\n${ran.stdout}\n${ran.stderr}`);
-  process.exit(1);
+  throw new Error(`${name} failed:\n${ran.stdout}\n${ran.stderr}`);
 }
 
-/** Builds when a source changed. Ends the process, with the builder's words, when a step fails. */
+/** Builds when a source changed. Throws the builder's words when a step fails. */
 export async function build({ force = false } = {}) {
   const state = stateOfSources();
   if (!force && existsSync(mark) && readFileSync(mark, 'utf8') === state) return false;

@@ -1,0 +1,45 @@
+/** Makes a master of a demo deliverable: synthesised, brought to its loudness by the product's own engine, written as WAV. */
+import wavefile from 'wavefile';
+import { Meter } from '../../src/engine/meter.ts';
+import { layoutOfCount, weightsOf } from '../../src/engine/layouts.ts';
+import type { DemoDeliverable } from './demo-programmes.ts';
+import { addOver, applyGain, limit, synthesise } from './synthesis.ts';
+
+const ceilingDbfs = -3;
+
+function integratedOf(planar: Float64Array[], sampleRateHz: number, asDual: boolean): number {
+  const meter = new Meter({ sampleRateHz, weights: weightsOf(layoutOfCount(planar.length)) });
+  meter.process(planar, planar[0].length);
+  const { loudness } = meter.result().figures;
+  const lufs = asDual ? loudness.dualMonoIntegratedLufs : loudness.integratedLufs;
+  if (lufs === null || lufs === undefined) throw new Error('A demo programme came out silent');
+  return lufs;
+}
+
+/** The bytes of the deliverable's WAV. The same every time. */
+export function makeMaster(demo: DemoDeliverable, seed: number): Uint8Array {
+  const sampleRateHz = demo.sampleRateHz ?? 48_000;
+  const planar = synthesise({ ...demo, sampleRateHz, seed });
+  // Limiting lowers the loudness a little: a few rounds settle it.
+  for (let round = 0; round < 3; round++) {
+    applyGain(planar, demo.targetLufs - integratedOf(planar, sampleRateHz, false));
+    limit(planar, ceilingDbfs, sampleRateHz);
+  }
+  if (demo.over)
+    addOver(
+      planar,
+      demo.over.audioChannel,
+      demo.over.at * demo.seconds,
+      demo.over.truePeakDbtp,
+      sampleRateHz,
+    );
+  const depth = demo.bitDepth ?? '24';
+  const full = 2 ** (Number(depth) - 1);
+  const integers = planar.map((audioChannel) =>
+    Int32Array.from(audioChannel, (x) => Math.max(-full, Math.min(full - 1, Math.round(x * full)))),
+  );
+  const wave = new wavefile.WaveFile();
+  wave.fromScratch(integers.length, sampleRateHz, depth, integers.length === 1 ? integers[0] : integers);
+  const bytes = wave.toBuffer();
+  return demo.truncateShare ? bytes.subarray(0, Math.round(bytes.length * (1 - demo.truncateShare))) : bytes;
+}
