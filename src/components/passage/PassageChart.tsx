@@ -8,7 +8,7 @@ import {
   PointElement,
   type ChartOptions,
 } from 'chart.js';
-import zoom from 'chartjs-plugin-zoom';
+import type {} from 'chartjs-plugin-zoom';
 import { useEffect, useMemo, useRef, useState, type KeyboardEvent } from 'react';
 import { Line } from 'react-chartjs-2';
 import type { Passage } from '@/domain/api/deliverables.ts';
@@ -16,7 +16,7 @@ import { formatDuration, formatTimecode } from '@/domain/figures-text.ts';
 import { readColours, type Colours } from './colours.ts';
 import { passageDrawing, peakBand, type Draught, type Drawn } from './drawing.ts';
 
-ChartJs.register(LineController, LineElement, PointElement, LinearScale, Filler, Decimation, zoom);
+ChartJs.register(LineController, LineElement, PointElement, LinearScale, Filler, Decimation);
 
 interface Props {
   passage: Passage;
@@ -54,9 +54,18 @@ export function PassageChart({
 
   useEffect(() => {
     const read = () => setColours(readColours());
-    read();
-    addEventListener('plimsoll-theme', read);
-    return () => removeEventListener('plimsoll-theme', read);
+    let gone = false;
+    // Its gestures ask for a window as soon as it is loaded, so the server must not load it.
+    void import('chartjs-plugin-zoom').then(({ default: zoom }) => {
+      if (gone) return;
+      ChartJs.register(zoom);
+      read();
+      addEventListener('plimsoll-theme', read);
+    });
+    return () => {
+      gone = true;
+      removeEventListener('plimsoll-theme', read);
+    };
   }, []);
   const drawing = useMemo(
     () =>
