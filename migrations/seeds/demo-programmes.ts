@@ -78,7 +78,7 @@ export const deliverables: DemoDeliverable[] = [
     over: { audioChannel: 2, truePeakDbtp: -0.4, at: 0.4 },
     then: { waive: 'One over of a few milliseconds, inaudible; cleared with the producer.' },
   }),
-  tallow(3, 'stereo', { seconds: 75, quietPassageDb: 22, targetLufs: -23 }),
+  tallow(3, 'stereo', { seconds: 75, quietPassageDb: 16, targetLufs: -23 }),
   tallow(3, '5.1', { targetLufs: -23.2 }),
   tallow(5, 'stereo', { targetLufs: -22.9 }),
   tallow(5, '5.1', { targetLufs: -24.1 }),

@@ -2,7 +2,6 @@
 import type { SpecBody } from '../../src/domain/spec.ts';
 import type { ChannelKind, ContentKind, Role } from '../../src/domain/vocabulary.ts';
 
-
 interface DemoOrganisation {
   slug: string;
   name: string;

@@ -7,13 +7,32 @@ import { addOver, applyGain, limit, synthesise } from './synthesis.ts';
 
 const ceilingDbfs = -3;
 
-function integratedOf(planar: Float64Array[], sampleRateHz: number, asDual: boolean): number {
-  const meter = new Meter({ sampleRateHz, weights: weightsOf(layoutOfCount(planar.length)) });
+function integratedOf(planar: Float64Array[], sampleRateHz: number): number {
+  const meter = new Meter({
+    sampleRateHz,
+    weights: weightsOf(layoutOfCount(planar.length)),
+    interpolate: false,
+  });
   meter.process(planar, planar[0].length);
-  const { loudness } = meter.result().figures;
-  const lufs = asDual ? loudness.dualMonoIntegratedLufs : loudness.integratedLufs;
-  if (lufs === null || lufs === undefined) throw new Error('A demo programme came out silent');
-  return lufs;
+  const { integratedLufs } = meter.result().figures.loudness;
+  if (integratedLufs === null) throw new Error('A demo programme came out silent');
+  return integratedLufs;
+}
+
+const peakOf = (planar: Float64Array[]) =>
+  planar.reduce((peak, samples) => samples.reduce((p, x) => Math.max(p, Math.abs(x)), peak), 0);
+
+/** Tells the WAV what its six audio channels are: WAVE_FORMAT_EXTENSIBLE, mask 0x3F, sub-format PCM. */
+function nameSurround(wave: wavefile.WaveFile): void {
+  const subformat = [1, 0x00100000, 0xaa000080, 0x719b3800];
+  Object.assign(wave.fmt as object, {
+    audioFormat: 0xfffe,
+    chunkSize: 40,
+    cbSize: 22,
+    validBitsPerSample: 24,
+    dwChannelMask: 0x3f,
+    subformat,
+  });
 }
 
 /** The bytes of the deliverable's WAV. The same every time. */
@@ -22,7 +41,8 @@ export function makeMaster(demo: DemoDeliverable, seed: number): Uint8Array {
   const planar = synthesise({ ...demo, sampleRateHz, seed });
   // Limiting lowers the loudness a little: a few rounds settle it.
   for (let round = 0; round < 3; round++) {
-    applyGain(planar, demo.targetLufs - integratedOf(planar, sampleRateHz, false));
+    applyGain(planar, demo.targetLufs - integratedOf(planar, sampleRateHz));
+    if (peakOf(planar) <= 10 ** (ceilingDbfs / 20)) break;
     limit(planar, ceilingDbfs, sampleRateHz);
   }
   if (demo.over)
@@ -40,6 +60,7 @@ export function makeMaster(demo: DemoDeliverable, seed: number): Uint8Array {
   );
   const wave = new wavefile.WaveFile();
   wave.fromScratch(integers.length, sampleRateHz, depth, integers.length === 1 ? integers[0] : integers);
+  if (demo.layout === '5.1') nameSurround(wave);
   const bytes = wave.toBuffer();
   return demo.truncateShare ? bytes.subarray(0, Math.round(bytes.length * (1 - demo.truncateShare))) : bytes;
 }

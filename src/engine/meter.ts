@@ -18,6 +18,8 @@ export interface MeterOptions {
   sampleRateHz: number;
   /** One weight of BS.1770-5 per audio channel; 0 for LFE. */
   weights: readonly number[];
+  /** False leaves the interpolator out: true peaks are then the sample peaks, and only loudness is to be used. */
+  interpolate?: boolean;
 }
 
 /** One audio channel's state; the arrays are its growing series of steps. */
@@ -71,7 +73,7 @@ export class Meter {
   constructor(options: MeterOptions) {
     this.#options = options;
     this.#stepSamples = options.sampleRateHz / stepsPerSecond;
-    this.#phases = phasesFor(options.sampleRateHz);
+    this.#phases = options.interpolate === false ? [] : phasesFor(options.sampleRateHz);
     [this.#shelf, this.#highPass] = kWeighting(options.sampleRateHz);
     this.reset();
   }
