@@ -36,10 +36,19 @@ export class PiecewiseSource implements ByteSource {
     return piece;
   }
 
+  async #fetch(index: number): Promise<Uint8Array> {
+    const start = index * pieceBytes;
+    const end = Math.min(this.size, start + pieceBytes);
+    const piece = await this.fetchRange(start, end);
+    if (piece.length !== end - start)
+      throw new Error(`${piece.length} bytes came where ${end - start} were asked for`);
+    return piece;
+  }
+
   #ask(index: number): Promise<Uint8Array> {
     let piece = this.#pieces.get(index);
     if (piece) this.#pieces.delete(index);
-    piece ??= this.fetchRange(index * pieceBytes, Math.min(this.size, (index + 1) * pieceBytes));
+    piece ??= this.#fetch(index);
     // A failed piece is asked for anew by whoever needs it; fetched ahead, its failure is nobody's yet.
     piece.catch(() => this.#pieces.delete(index));
     this.#pieces.set(index, piece);

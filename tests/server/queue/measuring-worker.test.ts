@@ -1,4 +1,3 @@
-import { once } from 'node:events';
 import { randomUUID } from 'node:crypto';
 import { afterAll, afterEach, beforeAll, describe, expect, it } from 'vitest';
 import { QueueEvents } from 'bullmq';
@@ -42,6 +41,16 @@ const work = (run: (id: string, signal: AbortSignal) => Promise<MeasuringEnd>) =
   workers.push(worker);
   return worker;
 };
+/** The next such event of this job; other tests' jobs may still be telling theirs. */
+const tells = (event: 'completed' | 'failed', jobId: string) =>
+  new Promise<{ failedReason?: string }>((resolve) => {
+    const listen = (what: { jobId: string; failedReason?: string }) => {
+      if (what.jobId !== jobId) return;
+      told.off(event, listen);
+      resolve(what);
+    };
+    told.on(event, listen);
+  });
 const row = (id: string) => db()('deliverables').where({ id }).first();
 const retriedImpatiently = (id: string) =>
   measuringQueue().add(
@@ -82,7 +91,7 @@ describe("the queue's worker", () => {
       if (runs < 3) throw new Error('storage is away');
       return { kind: 'measured' };
     });
-    const done = once(told, 'completed');
+    const done = tells('completed', measuringJobId(id));
     await retriedImpatiently(id);
     await done;
     expect(runs).toBe(3);
@@ -95,9 +104,9 @@ describe("the queue's worker", () => {
       runs += 1;
       return { kind: 'unreadable', reason: 'This is no audio.' };
     });
-    const failed = once(told, 'failed');
+    const failed = tells('failed', measuringJobId(id));
     await retriedImpatiently(id);
-    expect((await failed)[0]).toMatchObject({ jobId: measuringJobId(id), failedReason: 'This is no audio.' });
+    expect((await failed).failedReason).toBe('This is no audio.');
     expect(runs).toBe(1);
   });
 
@@ -107,13 +116,13 @@ describe("the queue's worker", () => {
       runs += 1;
       return { kind: 'measured' };
     });
-    const failed = once(told, 'failed');
+    const failed = tells('failed', 'measure-odd');
     await measuringQueue().add(
       'measure',
       { deliverableId: '../../etc' },
       { jobId: 'measure-odd', attempts: 4 },
     );
-    expect((await failed)[0].failedReason).toMatch(/names no deliverable/);
+    expect((await failed).failedReason).toMatch(/names no deliverable/);
     expect(runs).toBe(0);
   });
 });

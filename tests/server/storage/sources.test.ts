@@ -47,6 +47,13 @@ describe('reading an object in pieces', () => {
   });
 });
 
+describe('an object that is shorter than it was said to be', () => {
+  it('ends the reading, and does not hang it', async () => {
+    const pieces = new PiecewiseSource(100, async () => new Uint8Array(60));
+    await expect(pieces.read(0, 100)).rejects.toThrow('60 bytes came where 100 were asked for');
+  });
+});
+
 describe('hashing while somebody reads', () => {
   it('ends in the digest of the whole object, in whatever order it was read', async () => {
     const whole = createHash('sha256').update(bytes).digest('hex');
