@@ -42,7 +42,7 @@ export function scaleOf(metric: string, limits: Limits, size: 'cell' | 'row'): S
   let max: number;
   if (atLeast !== null && atMost !== null) {
     const margin =
-      size === 'cell' ? Math.max(1.5, (atMost - atLeast) * 1.5) : Math.max(6, (atMost - atLeast) * 2);
+      size === 'cell' ? Math.max(1.5, (atMost - atLeast) * 1.5) : Math.max(4, (atMost - atLeast) * 2);
     [min, max] = [atLeast - margin, atMost + margin];
   } else {
     const [inside, beyond] = (oneSided[metric] ?? otherwise)[size];

@@ -110,7 +110,7 @@ export function PassageChart({
       animation: false,
       maintainAspectRatio: false,
       events: [],
-      layout: { padding: { top: peakBand + 4, right: 66, bottom: 34, left: 2 } },
+      layout: { padding: { top: peakBand + 4, right: 72, bottom: 34, left: 2 } },
       scales: {
         x: {
           type: 'linear',
@@ -118,10 +118,13 @@ export function PassageChart({
           max: shown?.[1] ?? length,
           grid: { display: false },
           border: { color: colours?.ink },
+          afterBuildTicks: (axis) => {
+            axis.ticks = timeTicks(axis.min, axis.max, axis.width).map((value) => ({ value }));
+          },
           ticks: {
+            autoSkip: false,
             color: colours?.muted,
             maxRotation: 0,
-            autoSkipPadding: 24,
             font: { family: '"Sometype Mono Variable"', size: 11 },
             callback: (value) => formatDuration(Number(value)),
           },
@@ -150,47 +153,92 @@ export function PassageChart({
     // eslint-disable-next-line react-hooks/exhaustive-deps
     [colours, length, top],
   );
+  const showAll = () => {
+    // Not the plugin's reset: that goes back to the stretch which the address gave.
+    chart.current?.zoomScale('x', { min: 0, max: length });
+    onShown?.(null);
+  };
   const onKeyDown = (event: KeyboardEvent) => {
     const flags = passage.excursions;
     const at = flags.findIndex((flag) => flag.number === current);
     if (event.key === 'ArrowRight' || event.key === 'ArrowLeft') {
       event.preventDefault();
       const next = flags[Math.min(flags.length - 1, Math.max(0, at + (event.key === 'ArrowRight' ? 1 : -1)))];
-      if (next) onCurrent?.(next.number);
+      if (!next) return;
+      bringIntoView(chart.current, next, length, onShown);
+      onCurrent?.(next.number);
     } else if (event.key === 'Enter') {
       event.preventDefault();
       onPlayFrom?.(Math.max(0, (flags[at]?.startSeconds ?? 0) - 1));
     } else if (event.key === 'Escape') {
-      chart.current?.resetZoom();
-      onShown?.(null);
+      showAll();
     } else if (event.key === '+' || event.key === '-') chart.current?.zoom(event.key === '+' ? 1.3 : 0.77);
   };
-  const label = `Loudness over ${formatTimecode(length)}; ${passage.excursions.length === 0 ? 'no limit is passed' : `${passage.excursions.length} excursions, listed beneath`}. Arrow keys move by excursion, Enter plays from there.`;
+  const label = `Loudness over ${formatTimecode(length)}; ${passage.excursions.length === 0 ? 'no limit is passed' : `${passage.excursions.length} excursions, listed beneath`}. Arrow keys move by excursion, Enter plays from there, plus and minus zoom, Escape shows all.`;
   return (
-    // The chart is one composite control: its flags are walked by key and listed as text beneath it.
-    // eslint-disable-next-line jsx-a11y/no-noninteractive-element-interactions, jsx-a11y/no-noninteractive-tabindex
-    <div
-      role="application"
-      aria-label={label}
-      tabIndex={0}
-      onKeyDown={onKeyDown}
-      style={{ height }}
-      className="relative"
-    >
-      {colours && (
-        <Line
-          ref={(made) => {
-            chart.current = made ?? null;
-          }}
-          data={data}
-          options={options}
-          plugins={[drawing]}
-          onDoubleClick={(event) => {
-            const x = chart.current?.scales.x.getValueForPixel(event.nativeEvent.offsetX);
-            if (x !== undefined) onPlayFrom?.(Math.max(0, x));
-          }}
-        />
+    <div className="relative">
+      {shown && (
+        <button
+          type="button"
+          className="absolute -top-7 right-0 z-10 bg-sheet text-[12.5px] text-teal underline underline-offset-4"
+          onClick={showAll}
+        >
+          Show all
+        </button>
       )}
+      {/* The chart is one composite control: its flags are walked by key and listed as text beneath it. */}
+      {/* eslint-disable-next-line jsx-a11y/no-noninteractive-element-interactions, jsx-a11y/no-noninteractive-tabindex */}
+      <div
+        role="application"
+        aria-label={label}
+        tabIndex={0}
+        onKeyDown={onKeyDown}
+        style={{ height }}
+        className="relative"
+      >
+        {colours && (
+          <Line
+            ref={(made) => {
+              chart.current = made ?? null;
+            }}
+            data={data}
+            options={options}
+            plugins={[drawing]}
+            onDoubleClick={(event) => {
+              const x = chart.current?.scales.x.getValueForPixel(event.nativeEvent.offsetX);
+              if (x !== undefined) onPlayFrom?.(Math.max(0, x));
+            }}
+          />
+        )}
+      </div>
     </div>
+  );
+}
+
+/** Moves the stretch shown so that an excursion outside it stands in its middle. */
+function bringIntoView(
+  chart: ChartJs<'line'> | null,
+  { startSeconds, lengthSeconds }: Passage['excursions'][number],
+  length: number,
+  onShown: Props['onShown'],
+): void {
+  if (!chart) return;
+  const { min, max } = chart.scales.x;
+  const middle = startSeconds + lengthSeconds / 2;
+  if (middle >= min && middle <= max) return;
+  const from = Math.min(length - (max - min), Math.max(0, middle - (max - min) / 2));
+  chart.zoomScale('x', { min: from, max: from + max - min });
+  onShown?.([from, from + max - min]);
+}
+
+/** Round times, far enough apart for their labels. */
+export function timeTicks(min: number, max: number, width: number): number[] {
+  const most = Math.max(2, width / 78);
+  const step =
+    [1, 2, 5, 10, 15, 30, 60, 120, 300, 600, 900, 1800, 3600].find((s) => (max - min) / s <= most) ?? 7200;
+  const first = Math.ceil(min / step - 1e-9);
+  return Array.from(
+    { length: Math.max(0, Math.floor(max / step + 1e-9) - first + 1) },
+    (_, i) => (first + i) * step,
   );
 }

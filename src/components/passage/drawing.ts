@@ -1,7 +1,7 @@
 /** What the passage chart draws itself over Chart.js's surface: peaks from the top, draught marks, hatching, flags. */
 import type { Chart, Plugin } from 'chart.js';
 import type { Passage } from '@/domain/api/deliverables.ts';
-import { formatLevel } from '@/domain/figures-text.ts';
+import { formatLevel, formatLimit } from '@/domain/figures-text.ts';
 import type { Colours } from './colours.ts';
 
 /** A limit of the spec on the scale of loudness or of true peak. */
@@ -26,10 +26,11 @@ export const peakBand = 58;
 const peakTop = 3;
 const peakBottom = -24;
 
+/** A louder peak hangs lower: the line drops from the top edge towards the limit, and past it. */
 const peakY = (chart: Chart, dbtp: number) =>
   chart.chartArea.top -
   peakBand +
-  ((peakTop - Math.max(peakBottom, dbtp)) / (peakTop - peakBottom)) * peakBand;
+  Math.min(1, Math.max(0, (dbtp - peakBottom) / (peakTop - peakBottom))) * peakBand;
 const tone = (colours: Colours, breach: 'reject' | 'advise') =>
   breach === 'reject' ? colours.hull : colours.brass;
 
@@ -39,13 +40,17 @@ function columns(
   values: readonly (number | null)[],
   step: number,
   draw: (x: number, value: number) => void,
+  width = 1,
 ): void {
   const { left, right } = chart.chartArea;
   const { min, max } = chart.scales.x;
   const per = (max - min) / Math.max(1, right - left);
-  for (let x = Math.floor(left); x <= right; x++) {
+  for (let x = Math.floor(left); x <= right; x += width) {
     const from = Math.max(0, Math.floor((min + (x - left) * per) / step));
-    const to = Math.min(values.length, Math.max(from + 1, Math.ceil((min + (x + 1 - left) * per) / step)));
+    const to = Math.min(
+      values.length,
+      Math.max(from + 1, Math.ceil((min + (x + width - left) * per) / step)),
+    );
     let largest = -Infinity;
     for (let i = from; i < to; i++) largest = Math.max(largest, values[i] ?? -Infinity);
     if (largest > -Infinity) draw(x, largest);
@@ -74,12 +79,19 @@ function drawPeaks(chart: Chart, { passage, draughts, colours }: Drawn): void {
   const { ctx, chartArea } = chart;
   const limit = draughts.find((d) => d.of === 'truePeak');
   const top = chartArea.top - peakBand;
-  columns(chart, passage.truePeakDbtp, passage.stepSeconds, (x, value) => {
-    const beyond = limit && Math.round(value * 10) / 10 > limit.value;
-    ctx.fillStyle = beyond ? tone(colours, limit.breach) : colours.muted;
-    ctx.globalAlpha = beyond ? 1 : 0.45;
-    ctx.fillRect(x, top, 1, Math.max(0, peakY(chart, value) - top));
-  });
+  columns(
+    chart,
+    passage.truePeakDbtp,
+    passage.stepSeconds,
+    (x, value) => {
+      const beyond = limit && Math.round(value * 10) / 10 > limit.value;
+      ctx.fillStyle = beyond ? tone(colours, limit.breach) : colours.muted;
+      ctx.globalAlpha = beyond ? 1 : 0.45;
+      ctx.fillRect(x, top, beyond ? 2 : 1, Math.max(0, peakY(chart, value) - top));
+      // Lines with air between them, as from a row of plummets.
+    },
+    3,
+  );
   ctx.globalAlpha = 1;
   if (!limit) return;
   const y = peakY(chart, limit.value);
@@ -91,8 +103,9 @@ function drawPeaks(chart: Chart, { passage, draughts, colours }: Drawn): void {
   ctx.lineTo(chartArea.right, y);
   ctx.stroke();
   ctx.setLineDash([]);
-  ctx.fillStyle = colours.ink;
-  ctx.fillText(`${formatLevel(limit.value)} dBTP`, chartArea.right + 8, y);
+  ctx.fillStyle = tone(colours, limit.breach);
+  ctx.fillRect(chartArea.right, y - 1, 7, 2);
+  ctx.fillText(`${formatLimit(limit.value).replace(/\.0$/, '')} dBTP`, chartArea.right + 11, y);
 }
 
 function drawBeyond(chart: Chart, { passage, draughts, colours }: Drawn): void {
@@ -114,9 +127,11 @@ function drawDraughts(chart: Chart, { draughts, colours }: Drawn): void {
   const marks = draughts
     .filter((d) => d.of !== 'truePeak')
     .map((d) => ({ ...d, y: scales.y.getPixelForValue(d.value) }));
+  const peak = draughts.find((d) => d.of === 'truePeak');
+  const peakLimitY = peak ? peakY(chart, peak.value) : -Infinity;
   for (const tick of scales.y.ticks) {
     const y = scales.y.getPixelForValue(tick.value);
-    if (marks.some((mark) => Math.abs(mark.y - y) < 13)) continue;
+    if (marks.some((mark) => Math.abs(mark.y - y) < 13) || Math.abs(peakLimitY - y) < 13) continue;
     ctx.fillStyle = colours.muted;
     ctx.fillRect(chartArea.right, y, 7, 1);
     ctx.fillText(formatLevel(tick.value, 0), chartArea.right + 11, y);
@@ -140,17 +155,34 @@ function drawDraughts(chart: Chart, { draughts, colours }: Drawn): void {
 /** Half a flag's size; flags stand in the strip under the time axis. */
 const flag = 9;
 
+/** The one in hand first, then what rejects, then by time: whoever comes first keeps the room for its number. */
+function inOrderOfWeight({ excursions }: Passage, current: number | null): Passage['excursions'] {
+  const weight = (one: Passage['excursions'][number]) =>
+    one.number === current ? 0 : one.breach === 'reject' ? 1 : 2;
+  return [...excursions].sort((a, b) => weight(a) - weight(b) || a.number - b.number);
+}
+
 function drawFlags(chart: Chart, { passage, colours, current, playing }: Drawn): void {
   const { ctx, chartArea, scales } = chart;
   ctx.textAlign = 'center';
-  for (const excursion of passage.excursions) {
+  const y = chartArea.bottom + 38;
+  const taken: number[] = [];
+  for (const excursion of inOrderOfWeight(passage, current)) {
     const x = scales.x.getPixelForValue(excursion.startSeconds + excursion.lengthSeconds / 2);
     if (x < chartArea.left || x > chartArea.right) continue;
-    const y = chartArea.bottom + 38;
+    if (taken.some((other) => Math.abs(other - x) < 2 * flag + 3)) {
+      // No room for its number at this zoom; the list has it.
+      ctx.fillStyle = tone(colours, excursion.breach);
+      ctx.fillRect(x - 0.75, chartArea.bottom + 22, 1.5, 6);
+      continue;
+    }
+    taken.push(x);
     ctx.fillStyle = ctx.strokeStyle = tone(colours, excursion.breach);
     ctx.setLineDash([1, 4]);
     ctx.beginPath();
     ctx.moveTo(x, chartArea.top - peakBand);
+    ctx.lineTo(x, chartArea.bottom);
+    ctx.moveTo(x, chartArea.bottom + 22);
     ctx.lineTo(x, y - flag);
     ctx.stroke();
     ctx.setLineDash([]);
@@ -168,6 +200,8 @@ function drawFlags(chart: Chart, { passage, colours, current, playing }: Drawn):
   ctx.fillRect(x - 0.75, chartArea.top - peakBand, 1.5, chartArea.bottom - chartArea.top + peakBand);
 }
 
+const face = '11px "Sometype Mono Variable", monospace';
+
 /** Draws from whatever `read` gives at the time, so that playback moves without making the chart anew. */
 export const passageDrawing = (read: () => Drawn): Plugin => ({
   id: 'passage',
@@ -175,6 +209,7 @@ export const passageDrawing = (read: () => Drawn): Plugin => ({
     const drawn = read();
     chart.ctx.save();
     chart.ctx.textBaseline = 'middle';
+    chart.ctx.font = face;
     drawPeaks(chart, drawn);
     chart.ctx.restore();
   },
@@ -182,7 +217,7 @@ export const passageDrawing = (read: () => Drawn): Plugin => ({
     const drawn = read();
     chart.ctx.save();
     chart.ctx.textBaseline = 'middle';
-    chart.ctx.font = '11px "Sometype Mono Variable", monospace';
+    chart.ctx.font = face;
     drawBeyond(chart, drawn);
     drawDraughts(chart, drawn);
     drawFlags(chart, drawn);

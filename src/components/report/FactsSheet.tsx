@@ -18,7 +18,7 @@ const Row = ({ name, children }: { name: string; children: React.ReactNode }) =>
 );
 
 const at = (seconds: number | null) =>
-  seconds !== null && <span className="num text-[12px] text-muted"> at {formatTimecode(seconds)}</span>;
+  seconds !== null && <span className="num block text-[12px] text-muted">at {formatTimecode(seconds)}</span>;
 
 /** Every figure and fact that stands, whatever a spec asks. */
 export function FactsSheet({ measurement, fileName, byteSize, sha256 }: Props) {
@@ -26,7 +26,7 @@ export function FactsSheet({ measurement, fileName, byteSize, sha256 }: Props) {
   const { loudness: l, times } = figures;
   const list = 'grid grid-cols-[auto_1fr] gap-x-4 gap-y-1 text-[13px]';
   return (
-    <div className="grid gap-5">
+    <div className="grid min-w-0 gap-5">
       <section className="sheet p-4">
         <h2 className="mb-2 text-[13px] font-semibold">Figures</h2>
         <dl className={list}>

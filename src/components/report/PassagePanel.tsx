@@ -32,8 +32,10 @@ export default function PassagePanel(props: Props) {
 
 /** Level that playback begins at: a loud mix is turned down to here, a quiet one is left as it is. */
 const listeningLufs = -23;
-const startVolume = (integratedLufs: number | null) =>
-  integratedLufs === null ? 0.5 : Math.min(1, 10 ** ((listeningLufs - integratedLufs) / 20));
+/** Decibels to turn down by; never negative, so playback is never louder than the file. */
+const turnedDownDb = (integratedLufs: number | null) =>
+  integratedLufs === null ? 6 : Math.max(0, integratedLufs - listeningLufs);
+const startVolume = (integratedLufs: number | null) => 10 ** (-turnedDownDb(integratedLufs) / 20);
 
 function shownIn(params: URLSearchParams): [number, number] | null {
   const [from, to] = (params.get('t') ?? '').split('-').map(Number);
@@ -62,10 +64,10 @@ function Panel({ passageUrl, audioUrl, specBody, integratedLufs, search, compact
     // A browser that cannot play says so through the element's error, below.
     void audio.current.play().catch(() => undefined);
   };
-  const volume = Math.round(startVolume(integratedLufs) * 100);
+  const down = turnedDownDb(integratedLufs);
 
   return (
-    <div className="grid gap-4">
+    <div className="grid min-w-0 grid-cols-[minmax(0,1fr)] content-start gap-4">
       <section className={compact ? '' : 'sheet px-4 pt-3 pb-2'}>
         {!compact && (
           <div className="mb-1 flex flex-wrap items-baseline justify-between gap-2">
@@ -116,8 +118,11 @@ function Panel({ passageUrl, audioUrl, specBody, integratedLufs, search, compact
         )}
         <p className="my-2 text-[12.5px] text-muted">
           Start with your monitors low: sustained loud listening harms hearing; follow your local
-          workplace-noise rules. Playback begins at {volume} % of the file's level and is never louder than
-          the file.
+          workplace-noise rules.{' '}
+          {down >= 0.05
+            ? `Playback begins ${formatLevel(down)} dB below the file's level`
+            : "Playback begins at the file's own level"}{' '}
+          and is never louder than the file.
         </p>
       </section>
       {passage.data && (
@@ -155,7 +160,7 @@ function Excursions({ passage, current, compact, onPlay }: ExcursionsProps) {
           <thead className="sr-only">
             <tr>
               {['Number', 'What', 'From', 'For', 'Beyond', 'Play'].map((name) => (
-                <th key={name} scope="col">
+                <th key={name} scope="col" className={name === 'For' ? 'max-sm:hidden' : undefined}>
                   {name}
                 </th>
               ))}
@@ -173,7 +178,7 @@ function Excursions({ passage, current, compact, onPlay }: ExcursionsProps) {
                 </td>
                 <td>{one.name}</td>
                 <td className="num">{formatTimecode(one.startSeconds)}</td>
-                <td className="n num">{formatLevel(one.lengthSeconds)} s</td>
+                <td className="n num max-sm:hidden">{formatLevel(one.lengthSeconds)} s</td>
                 <td className={`n num font-semibold ${one.breach === 'reject' ? 'text-hull' : 'text-brass'}`}>
                   +{formatLevel(one.beyond)}
                   <span className="unit">{one.unit === 'dBTP' ? 'dB' : 'LU'}</span>

@@ -3,12 +3,27 @@ import { outcomeTone, VerdictMark } from '@/components/look/VerdictMark.tsx';
 import type { RuleVerdict, VerdictBody } from '@/domain/verdict.ts';
 
 const worstFirst = { fail: 0, advisory: 1, not_judged: 2, pass: 3 };
+const hasLine = (rule: RuleVerdict) => rule.metric !== null && rule.judged !== null;
+/** What needs a person first; among equals, rules with a scale before facts. */
 const inOrder = (rules: readonly RuleVerdict[]) =>
   [...rules].sort(
-    (a, b) =>
-      Number(b.metric !== null && b.judged !== null) - Number(a.metric !== null && a.judged !== null) ||
-      worstFirst[a.outcome] - worstFirst[b.outcome],
+    (a, b) => worstFirst[a.outcome] - worstFirst[b.outcome] || Number(hasLine(b)) - Number(hasLine(a)),
   );
+
+function RuleLine({ rule, width }: { rule: RuleVerdict; width: number }) {
+  return (
+    <LoadLine
+      metric={rule.metric ?? ''}
+      value={rule.judged}
+      atLeast={rule.atLeast}
+      atMost={rule.atMost}
+      outcome={rule.outcome}
+      size="row"
+      width={width}
+      label={`${rule.name} ${rule.judgedText} ${rule.unit}, ${rule.marginText}; permitted: ${rule.permittedText}`}
+    />
+  );
+}
 
 /** Every rule of a verdict: the figure, the load line, the margin, what is permitted, and what a breach means. */
 export function RulesTable({ verdict }: { verdict: VerdictBody }) {
@@ -38,16 +53,16 @@ export function RulesTable({ verdict }: { verdict: VerdictBody }) {
               {rule.judged !== null && rule.unit && <span className="unit">{rule.unit}</span>}
             </td>
             <td className="py-2! max-md:order-last max-md:col-span-2 md:w-[430px]">
-              {rule.metric !== null && rule.judged !== null && (
-                <LoadLine
-                  metric={rule.metric}
-                  value={rule.judged}
-                  atLeast={rule.atLeast}
-                  atMost={rule.atMost}
-                  outcome={rule.outcome}
-                  size="row"
-                  label={`${rule.name} ${rule.judgedText} ${rule.unit}, ${rule.marginText}; permitted: ${rule.permittedText}`}
-                />
+              {hasLine(rule) && (
+                <>
+                  <span className="hidden md:block">
+                    <RuleLine rule={rule} width={390} />
+                  </span>
+                  {/* Drawn for the hand rather than shrunk, so that its numbers can be read. */}
+                  <span className="md:hidden">
+                    <RuleLine rule={rule} width={292} />
+                  </span>
+                </>
               )}
             </td>
             <td className={`${outcomeTone(rule.outcome)} max-md:text-right`}>
