@@ -29,7 +29,10 @@ export const specRowSchema = z.object({
 export type SpecRow = z.infer<typeof specRowSchema>;
 export const specListSchema = z.object({ items: z.array(specRowSchema) });
 /** Versions newest first, the draft (number null; only for its own organisation's spec owners) before all. */
-export const specDetailSchema = specRowSchema.extend({ versions: z.array(specVersionSchema), editable: z.boolean() });
+export const specDetailSchema = specRowSchema.extend({
+  versions: z.array(specVersionSchema),
+  editable: z.boolean(),
+});
 export type SpecDetail = z.infer<typeof specDetailSchema>;
 
 export const createSpecSchema = z.object({
@@ -38,10 +41,17 @@ export const createSpecSchema = z.object({
   startingSpecId: z.string().max(60).optional(),
   body: specBodySchema.optional(),
 });
-export const saveDraftSchema = z.object({ body: specBodySchema, changeNote: z.string().trim().max(600).default('') });
+/** Which draft the writer has seen: its `updatedAt`, `null` for none. Left out: whatever is there is written over. */
+const seenDraft = { seenUpdatedAt: momentSchema.nullable().optional() };
+export const saveDraftSchema = z.object({
+  body: specBodySchema,
+  changeNote: z.string().trim().max(600).default(''),
+  ...seenDraft,
+});
 export const publishSpecSchema = z.object({
   /** `null`: at once. A moment in the past is refused. */
   inForceFrom: momentSchema.nullable().default(null),
+  ...seenDraft,
 });
 export const publishSpecResultSchema = z.object({
   spec: specDetailSchema,
@@ -50,7 +60,14 @@ export const publishSpecResultSchema = z.object({
   changed: z.number().int(),
 });
 export const startingSpecListSchema = z.object({
-  items: z.array(z.object({ id: z.string(), name: z.string(), contentKinds: z.array(contentKindSchema), body: specBodySchema })),
+  items: z.array(
+    z.object({
+      id: z.string(),
+      name: z.string(),
+      contentKinds: z.array(contentKindSchema),
+      body: specBodySchema,
+    }),
+  ),
 });
 
 const assignmentSchema = z.object({
@@ -93,5 +110,13 @@ export const createAssignmentSchema = z.object({
   /** `null`: at once. A moment in the past is refused. */
   inForceFrom: momentSchema.nullable().default(null),
 });
+export const createAssignmentResultSchema = z.object({
+  channel: channelRowSchema,
+  rejudged: z.number().int(),
+  changed: z.number().int(),
+});
 export const createAgreementSchema = z.object({ supplierId: idSchema });
 export const supplierListSchema = z.object({ items: z.array(organisationRefSchema) });
+export type PublishSpecResult = z.infer<typeof publishSpecResultSchema>;
+export type CreateAssignmentResult = z.infer<typeof createAssignmentResultSchema>;
+export type StartingSpecList = z.infer<typeof startingSpecListSchema>;
