@@ -6,10 +6,10 @@ import { api } from '@/components/live/api.ts';
 import { useLiveEvents } from '@/components/live/use-live-events.ts';
 import { Notice } from '@/components/look/Notice.tsx';
 import { deliverableListSchema, uploadListSchema, type Upload } from '@/domain/api/deliverables.ts';
-import { formatBytes, formatDuration } from '@/domain/figures-text.ts';
 import { guessFromFileName } from '@/domain/file-name-guess.ts';
 import { ArrivingTable } from './ArrivingTable.tsx';
 import { UnfinishedUploads } from './UnfinishedUploads.tsx';
+import { progressText } from './upload-item.ts';
 import { useUploads } from './use-uploads.ts';
 
 interface Props {
@@ -27,7 +27,10 @@ export default function AddScreen(props: Props) {
 }
 
 function Screen({ channels, programmes, unfinished }: Props) {
-  const [mine, setMine] = useState<string[]>([]);
+  // With one channel to deliver to there is nothing to choose.
+  const [forChannels, setForChannels] = useState<Set<string>>(
+    () => new Set(channels.length === 1 ? [channels[0].id] : []),
+  );
   const [picked, setPicked] = useState<Set<string>>(new Set());
   const [editing, setEditing] = useState(false);
   const [over, setOver] = useState(false);
@@ -35,10 +38,15 @@ function Screen({ channels, programmes, unfinished }: Props) {
   const input = useRef<HTMLInputElement>(null);
   const client = useQueryClient();
   const refresh = () => void client.invalidateQueries({ queryKey: ['arriving'] });
-  const { sendings, rate, refused, setRefused, add, queue } = useUploads((uploads) => {
-    setMine((before) => [...new Set([...before, ...uploads.map((upload) => upload.deliverableId)])]);
-    refresh();
-  });
+  const { queue, items } = useUploads();
+  const mine = items.flatMap(({ deliverableId }) => deliverableId ?? []);
+  const totals = queue.totals();
+  const arrivals = items.map(({ deliverableId, state }) => `${deliverableId}${state === 'sent'}`).join();
+  useEffect(() => {
+    if (mine.length > 0) refresh();
+    // Read anew when a file begins or has arrived, and not with every byte.
+    // eslint-disable-next-line react-hooks/exhaustive-deps
+  }, [arrivals]);
   const rows = useQuery({
     queryKey: ['arriving'],
     queryFn: ({ signal }) => api.get('/api/v1/deliverables?limit=200', deliverableListSchema, signal),
@@ -60,42 +68,36 @@ function Screen({ channels, programmes, unfinished }: Props) {
     if (event.kind !== 'presence' && !(event.kind === 'deliverable' && event.progress)) refresh();
   });
 
-  const take = async (files: File[]) => {
-    setTrouble(null);
-    try {
-      await add(files, (fileName) => {
-        const guess = guessFromFileName(fileName, programmes);
-        // With one channel to deliver to there is nothing to choose.
+  const take = (files: File[]) =>
+    void queue.add(
+      files.map((file) => {
+        const { versionLabel, ...guess } = guessFromFileName(file.name, programmes);
         return {
-          ...guess,
-          versionLabel: guess.versionLabel ?? undefined,
-          channelIds: channels.length === 1 ? [channels[0].id] : [],
+          file,
+          details: {
+            ...guess,
+            versionLabel: versionLabel ?? undefined,
+            channelIds: [...forChannels],
+          },
         };
-      });
-    } catch (error) {
-      setTrouble(error instanceof Error ? error.message : 'The files were not taken.');
-    }
-  };
+      }),
+    );
   useEffect(() => {
     const hold = (event: DragEvent) => {
       if (!event.dataTransfer?.types.includes('Files')) return;
       event.preventDefault();
       setOver(event.type === 'dragover');
-      if (event.type === 'drop') void take([...event.dataTransfer.files]);
+      if (event.type === 'drop') take([...event.dataTransfer.files]);
     };
     const kinds = ['dragover', 'dragleave', 'drop'] as const;
     kinds.forEach((kind) => addEventListener(kind, hold));
     return () => kinds.forEach((kind) => removeEventListener(kind, hold));
   });
 
-  const shown = (rows.data?.items ?? []).filter((row) => mine.includes(row.id));
-  const bytes = sendings.reduce(
-    (sum, one) => ({ sent: sum.sent + one.sentBytes, all: sum.all + one.byteSize }),
-    { sent: 0, all: 0 },
-  );
-  const moving = sendings.some((one) => one.state === 'sending');
+  const rowOf = new Map((rows.data?.items ?? []).map((row) => [row.id, row]));
   const left = open.data.items.filter((upload) => !mine.includes(upload.deliverableId));
-  const pickedRows = shown.filter((row) => picked.has(row.id));
+  const pickedRows = [...picked].flatMap((id) => rowOf.get(id) ?? []);
+  const sending = items.some(({ state }) => state === 'sending');
   return (
     <>
       <h1>Add files</h1>
@@ -103,6 +105,28 @@ function Screen({ channels, programmes, unfinished }: Props) {
         Each file goes straight to storage, is measured, and is held against the delivery spec of every
         channel that it is for. Nobody outside your organisation sees it before you submit it.
       </p>
+      {channels.length > 0 ? (
+        <fieldset className="mt-4 flex flex-wrap items-center gap-x-5 gap-y-2">
+          <legend className="float-left mr-4 font-medium">The next files are for</legend>
+          {channels.map((channel) => (
+            <label key={channel.id} className="flex items-center gap-2">
+              <input
+                type="checkbox"
+                checked={forChannels.has(channel.id)}
+                onChange={() => setForChannels((before) => toggled(before, channel.id))}
+              />
+              {channel.name}
+            </label>
+          ))}
+        </fieldset>
+      ) : (
+        <div className="mt-4">
+          <Notice>
+            No channel takes your deliveries yet. Files are measured all the same; ask the distributor for an
+            agreement to have them judged.
+          </Notice>
+        </div>
+      )}
       <div
         className={`my-4 grid place-items-center gap-3 border border-dashed px-4 py-8 text-center ${over ? 'border-teal bg-pick' : 'border-muted'}`}
       >
@@ -115,10 +139,10 @@ function Screen({ channels, programmes, unfinished }: Props) {
           type="file"
           multiple
           className="sr-only"
-          aria-label="Choose files"
+          aria-label="Files to add"
           tabIndex={-1}
           onChange={(event) => {
-            void take([...(event.target.files ?? [])]);
+            take([...(event.target.files ?? [])]);
             event.target.value = '';
           }}
         />
@@ -126,60 +150,76 @@ function Screen({ channels, programmes, unfinished }: Props) {
           WAV, RF64, BW64, AIFF, FLAC, MP3, AAC, MOV, MXF and more, up to 64 GiB a file
         </p>
       </div>
-      {trouble && <Notice tone="refused">{trouble} Choose the files again.</Notice>}
-      {refused.length > 0 && (
-        <Notice tone="refused">
-          {refused.map((one, i) => (
-            <p key={i}>
-              <span className="num">{one.fileName}</span>: {one.message}
-            </p>
-          ))}
-          <button type="button" className="underline underline-offset-4" onClick={() => setRefused([])}>
-            Understood
-          </button>
-        </Notice>
-      )}
+      {trouble && <Notice tone="refused">{trouble}</Notice>}
       <UnfinishedUploads
         uploads={left}
         onForget={async (id) => {
-          await api.send('DELETE', `/api/v1/uploads/${id}`);
+          await api
+            .send('DELETE', `/api/v1/uploads/${id}`)
+            .catch((error: Error) => setTrouble(error.message));
           await open.refetch();
         }}
       />
-      {shown.length > 0 && (
+      {items.length > 0 && (
         <section className="mt-5">
           <div className="mb-2 flex flex-wrap items-center justify-between gap-3">
-            <p role="status" className="num text-[13px]">
-              {bytes.sent < bytes.all
-                ? `${formatBytes(bytes.sent)} of ${formatBytes(bytes.all)}${moving && rate > 0 ? `, ${formatBytes(rate)}/s, ${formatDuration((bytes.all - bytes.sent) / rate)} left` : ''}`
-                : 'Everything is sent.'}
-            </p>
-            <button
-              type="button"
-              className="btn btn-quiet"
-              disabled={pickedRows.length === 0}
-              onClick={() => setEditing(true)}
-            >
-              {pickedRows.length > 0
-                ? `Set details of ${pickedRows.length} picked`
-                : 'Pick rows to set their details'}
-            </button>
+            <div className="grid w-full max-w-md gap-1 sm:w-auto sm:grow">
+              <p className="num text-[13px]">
+                {totals.bytesSent < totals.bytes
+                  ? progressText(totals.bytesSent, totals.bytes, totals.bytesPerSecond)
+                  : 'Everything is sent.'}
+              </p>
+              {totals.bytesSent < totals.bytes && (
+                <progress
+                  className="h-1.5 w-full accent-teal"
+                  max={totals.bytes}
+                  value={totals.bytesSent}
+                  aria-label="All files, sent"
+                />
+              )}
+            </div>
+            <div className="flex flex-wrap gap-2">
+              {sending && (
+                <button type="button" className="btn btn-quiet" onClick={() => queue.pauseAll()}>
+                  Pause all
+                </button>
+              )}
+              {items.some(({ state }) => state === 'paused') && (
+                <button type="button" className="btn btn-quiet" onClick={() => void queue.resumeAll()}>
+                  Go on with all
+                </button>
+              )}
+              <button
+                type="button"
+                className="btn btn-quiet"
+                disabled={pickedRows.length === 0}
+                onClick={() => setEditing(true)}
+              >
+                {pickedRows.length > 0
+                  ? `Set details of ${pickedRows.length} picked`
+                  : 'Pick rows to set their details'}
+              </button>
+            </div>
           </div>
           <ArrivingTable
-            rows={shown}
-            sendings={sendings}
+            items={items}
+            rowOf={rowOf}
             measuring={measuring}
             picked={picked}
             onPick={setPicked}
-            onPause={(id) => queue?.pause(id)}
-            onResume={(id) => queue?.resume(id)}
-            onCancel={(id) => {
-              queue?.remove(id);
-              setMine((before) => before.filter((one) => one !== id));
-              void api
-                .send('DELETE', `/api/v1/uploads/${id}`)
-                .catch((error: Error) => setTrouble(error.message));
+            onPause={(key) => queue.pause(key)}
+            onResume={(key) => void queue.resume(key)}
+            onCancel={(key) => {
+              queue
+                .cancel(key)
+                .catch((error: Error) =>
+                  setTrouble(
+                    `${error.message} The upload stands among those not finished; give it up there.`,
+                  ),
+                );
+              void open.refetch();
             }}
+            onForget={(key) => queue.forget(key)}
           />
         </section>
       )}
@@ -196,4 +236,10 @@ function Screen({ channels, programmes, unfinished }: Props) {
       )}
     </>
   );
+}
+
+function toggled<T>(before: ReadonlySet<T>, one: T): Set<T> {
+  const next = new Set(before);
+  if (!next.delete(one)) next.add(one);
+  return next;
 }

@@ -6,7 +6,7 @@ import {
   signPartsResultSchema,
 } from '@/domain/api/deliverables.ts';
 import type { HashAnswer } from './hash-worker.ts';
-import type { UploadTransport } from './upload-queue.ts';
+import type { UploadTransport } from './upload-transport.ts';
 
 const uploadPath = (deliverableId: string, rest = '') => `/api/v1/uploads/${deliverableId}${rest}`;
 

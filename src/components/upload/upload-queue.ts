@@ -1,39 +1,7 @@
-import type { z } from 'zod';
-import type {
-  completeUploadResultSchema,
-  createUploadsResultSchema,
-  DeliverableDetails,
-  Upload,
-} from '@/domain/api/deliverables.ts';
+import type { Upload } from '@/domain/api/deliverables.ts';
 import { formatBytes } from '@/domain/figures-text.ts';
-import {
-  partRange,
-  rateOf,
-  type Sample,
-  type SendableFile,
-  type UploadItem,
-  type UploadState,
-} from './upload-item.ts';
-
-export interface NewFile {
-  file: SendableFile;
-  details: DeliverableDetails;
-}
-
-/** Everything that the queue does outside of itself. All may reject; `isFinal` says what must not be tried again. */
-export interface UploadTransport {
-  begin(files: NewFile[]): Promise<z.output<typeof createUploadsResultSchema>['items']>;
-  sign(deliverableId: string, numbers: number[]): Promise<Map<number, string>>;
-  /** Sends one part to storage; answers with its ETag. */
-  put(url: string, part: Blob, onProgress: (bytes: number) => void, signal: AbortSignal): Promise<string>;
-  record(deliverableId: string, part: { number: number; etag: string; byteSize: number }): Promise<void>;
-  complete(deliverableId: string, sha256: string): Promise<z.output<typeof completeUploadResultSchema>>;
-  abort(deliverableId: string): Promise<void>;
-  hash(file: SendableFile, onProgress: (bytes: number) => void, signal: AbortSignal): Promise<string>;
-  isFinal(error: unknown): boolean;
-  nowMs(): number;
-  wait(ms: number, signal: AbortSignal): Promise<void>;
-}
+import { isUnderWay, partRange, rateOf, type Sample, type UploadItem } from './upload-item.ts';
+import type { NewFile, UploadTransport } from './upload-transport.ts';
 
 const partsAtOnce = 4;
 const signedAtOnce = 8;
@@ -85,12 +53,12 @@ export class UploadQueue {
   items = (): readonly UploadItem[] => this.snapshot;
 
   totals(): Totals {
-    const counted = this.snapshot.filter(({ state }) => state !== 'refused');
+    const counted = this.entries.map(({ item }) => item).filter(({ state }) => state !== 'refused');
     return {
       bytes: counted.reduce((sum, { byteSize }) => sum + byteSize, 0),
       bytesSent: counted.reduce((sum, { bytesSent }) => sum + bytesSent, 0),
       bytesPerSecond: rateOf(this.samples),
-      underWay: counted.filter(({ state }) => ['waiting', 'sending', 'joining'].includes(state)).length,
+      underWay: counted.filter(isUnderWay).length,
     };
   }
 
@@ -418,11 +386,7 @@ export class UploadQueue {
     this.change(entry, { bytesSent: this.sentOf(entry) }, 'progress');
   }
 
-  private change(
-    entry: Entry,
-    changes: Partial<UploadItem> & { state?: UploadState },
-    kind: 'step' | 'progress' = 'step',
-  ): void {
+  private change(entry: Entry, changes: Partial<UploadItem>, kind: 'step' | 'progress' = 'step'): void {
     entry.item = { ...entry.item, ...changes };
     if (kind === 'progress' && this.transport.nowMs() - this.toldAtMs < tellEveryMs) return;
     this.tell();
