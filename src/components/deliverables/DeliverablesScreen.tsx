@@ -1,4 +1,10 @@
-import { keepPreviousData, useInfiniteQuery, useQueryClient, type InfiniteData } from '@tanstack/react-query';
+import {
+  keepPreviousData,
+  useInfiniteQuery,
+  useQuery,
+  useQueryClient,
+  type InfiniteData,
+} from '@tanstack/react-query';
 import { useState } from 'react';
 import type { z } from 'zod';
 import { ApiProvider } from '@/components/live/ApiProvider.tsx';
@@ -7,9 +13,16 @@ import { useLiveEvents } from '@/components/live/use-live-events.ts';
 import { Notice } from '@/components/look/Notice.tsx';
 import { DataTable } from '@/components/table/DataTable.tsx';
 import { FilterBar } from '@/components/table/FilterBar.tsx';
+import { KeysHelp, listKeys } from '@/components/table/KeysHelp.tsx';
 import { useAddressState } from '@/components/table/use-address-state.ts';
-import { deliverableListSchema, type DeliverableRow } from '@/domain/api/deliverables.ts';
-import { contentKindNames, contentKinds } from '@/domain/vocabulary.ts';
+import { useDensity } from '@/components/table/use-density.ts';
+import { deliverableListSchema, programmesSchema, type DeliverableRow } from '@/domain/api/deliverables.ts';
+import {
+  contentKindNames,
+  contentKinds,
+  submissionStateNames,
+  submissionStates,
+} from '@/domain/vocabulary.ts';
 import { deliverableColumns, rowName } from './columns.tsx';
 import { DetailsDialog } from './DetailsDialog.tsx';
 import { SubmitDialog } from './SubmitDialog.tsx';
@@ -26,7 +39,7 @@ interface Props {
   mayUpload: boolean;
 }
 
-const asked = ['q', 'verdict', 'channel', 'state', 'kind', 'sort', 'order'];
+const asked = ['q', 'programme', 'verdict', 'channel', 'state', 'kind', 'sort', 'order'];
 
 export default function DeliverablesScreen(props: Props) {
   return (
@@ -41,7 +54,12 @@ function Screen({ initial, search, channels, mayUpload }: Props) {
   const [picked, setPicked] = useState<Set<string>>(new Set());
   const [dialog, setDialog] = useState<'details' | 'submit' | null>(null);
   const [said, setSaid] = useState<string | null>(null);
+  const [density, changeDensity] = useDensity();
   const client = useQueryClient();
+  const programmes = useQuery({
+    queryKey: ['programmes'],
+    queryFn: ({ signal }) => api.get('/api/v1/programmes', programmesSchema, signal),
+  });
   const query = new URLSearchParams(
     asked.flatMap((name) => (params.get(name) ? [[name, params.get(name) as string]] : [])),
   ).toString();
@@ -114,6 +132,11 @@ function Screen({ initial, search, channels, mayUpload }: Props) {
         placeholder="Programme, episode or file"
         choices={[
           {
+            name: 'programme',
+            label: 'Programme',
+            options: programmeOptions(programmes.data?.items ?? [], params.get('programme')),
+          },
+          {
             name: 'verdict',
             label: 'Verdict',
             options: [
@@ -133,8 +156,22 @@ function Screen({ initial, search, channels, mayUpload }: Props) {
             label: 'Kind',
             options: contentKinds.map((kind) => ({ value: kind, label: contentKindNames[kind] })),
           },
+          {
+            name: 'state',
+            label: 'State',
+            options: [
+              { value: 'uploading,waiting,measuring', label: 'On its way' },
+              { value: 'unreadable', label: 'Unreadable' },
+              ...submissionStates.map((state) => ({ value: state, label: submissionStateNames[state] })),
+            ],
+          },
         ]}
-      />
+      >
+        <button type="button" className="mr-4 hover:text-ink" onClick={changeDensity}>
+          {density === 'dense' ? 'Wider rows' : 'Closer rows'}
+        </button>
+        <KeysHelp keys={listKeys} />
+      </FilterBar>
       {said && (
         <div className="mb-3">
           <Notice>{said}</Notice>
@@ -161,6 +198,7 @@ function Screen({ initial, search, channels, mayUpload }: Props) {
           }}
           onSort={(sort) => change({ sort: sort.name, order: sort.order })}
           rowName={rowName}
+          density={density}
           empty={<Empty narrowed={query !== ''} mayUpload={mayUpload} />}
         />
       </div>
@@ -182,6 +220,13 @@ function Screen({ initial, search, channels, mayUpload }: Props) {
       )}
     </>
   );
+}
+
+/** The one that the address names is offered before the list is there, and when it is not in it. */
+function programmeOptions(programmes: { title: string }[], chosen: string | null) {
+  const titles = programmes.map(({ title }) => title);
+  if (chosen && !titles.includes(chosen)) titles.unshift(chosen);
+  return titles.map((title) => ({ value: title, label: title }));
 }
 
 function withProgress(

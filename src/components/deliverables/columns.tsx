@@ -65,7 +65,11 @@ export const deliverableColumns: ColumnDef<DeliverableRow, unknown>[] = [
     meta: { sort: 'programme' },
     cell: ({ row: { original: row } }) => (
       <a href={`/deliverables/${row.id}`} className="no-underline hover:underline" tabIndex={-1}>
-        {row.programmeTitle ?? <span className="num text-[12.5px] break-all">{row.fileName}</span>}
+        {row.programmeTitle ?? (
+          <span className="num block text-[12.5px] break-all md:max-w-44 md:truncate" title={row.fileName}>
+            {row.fileName}
+          </span>
+        )}
         <span className="text-muted sm:hidden"> {row.episodeLabel}</span>
       </a>
     ),
@@ -89,7 +93,9 @@ export const deliverableColumns: ColumnDef<DeliverableRow, unknown>[] = [
     id: 'layout',
     header: 'Layout',
     meta: { from: 'lg' },
-    cell: ({ row: { original: row } }) => row.format?.layout,
+    cell: ({ row: { original: row } }) => (
+      <span className="inline-block first-letter:uppercase">{row.format?.layout}</span>
+    ),
   },
   {
     id: 'integrated',
@@ -129,7 +135,10 @@ export const deliverableColumns: ColumnDef<DeliverableRow, unknown>[] = [
     header: 'Nearest limit',
     cell: ({ row: { original: row } }) =>
       row.state === 'unreadable' ? (
-        <span className="line-clamp-2 text-[12.5px] text-hull" title={row.reason ?? undefined}>
+        <span
+          className="line-clamp-2 max-w-48 text-[12.5px] leading-tight text-hull md:whitespace-normal"
+          title={row.reason ?? undefined}
+        >
           {row.reason}
         </span>
       ) : row.outcome === null ? (
@@ -139,7 +148,11 @@ export const deliverableColumns: ColumnDef<DeliverableRow, unknown>[] = [
           </span>
         )
       ) : (
-        <span className={outcomeTone(row.outcome)}>{worst(row)?.nearestText}</span>
+        <span
+          className={`line-clamp-2 max-w-52 leading-tight md:whitespace-normal ${outcomeTone(row.outcome)}`}
+        >
+          {worst(row)?.nearestText}
+        </span>
       ),
   },
   {
@@ -161,7 +174,11 @@ export const deliverableColumns: ColumnDef<DeliverableRow, unknown>[] = [
     header: 'State',
     meta: { from: 'xl' },
     cell: ({ row: { original: row } }) => (
-      <span className={stateText(row) === 'Awaiting review' ? '' : 'text-muted'}>{stateText(row)}</span>
+      <span
+        className={`block max-w-32 leading-tight whitespace-normal ${stateText(row) === 'Awaiting review' ? '' : 'text-muted'}`}
+      >
+        {stateText(row)}
+      </span>
     ),
   },
 ];

@@ -64,7 +64,7 @@ export function LoadLine({
       viewBox={`0 0 ${width} ${height + (size === 'row' ? 16 : 0)}`}
       role="img"
       aria-label={label}
-      className={`block max-w-full ${tone}`}
+      className={`block ${size === 'cell' ? 'shrink-0' : 'max-w-full'} ${tone}`}
     >
       {beyond && (
         <>

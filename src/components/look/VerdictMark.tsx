@@ -18,7 +18,7 @@ const bars: Record<Outcome, React.ReactNode> = {
 export function VerdictMark({ outcome, wordless = false }: { outcome: Outcome; wordless?: boolean }) {
   return (
     <span
-      className={`inline-flex items-center gap-[7px] leading-none font-semibold whitespace-nowrap ${tones[outcome]}`}
+      className={`inline-flex items-center gap-[7px] align-middle leading-none font-semibold whitespace-nowrap ${tones[outcome]}`}
     >
       <svg width="16" height="14" viewBox="0 0 16 14" aria-hidden="true">
         {bars[outcome]}

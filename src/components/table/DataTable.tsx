@@ -5,7 +5,7 @@ import {
   type ColumnDef,
   type RowData,
 } from '@tanstack/react-table';
-import { useRef, type KeyboardEvent, type ReactNode } from 'react';
+import { useEffect, useRef, type KeyboardEvent, type ReactNode } from 'react';
 
 declare module '@tanstack/react-table' {
   interface ColumnMeta<TData extends RowData, TValue> {
@@ -19,6 +19,8 @@ declare module '@tanstack/react-table' {
     of?: (row: TData, value: TValue) => never;
   }
 }
+
+export type Density = 'dense' | 'comfortable';
 
 interface Props<Row extends { id: string }> {
   label: string;
@@ -37,6 +39,7 @@ interface Props<Row extends { id: string }> {
   onSort: (sort: { name: string; order: 'asc' | 'desc' }) => void;
   rowName: (row: Row) => string;
   empty: ReactNode;
+  density?: Density;
 }
 
 const shownFrom = {
@@ -68,6 +71,18 @@ export function DataTable<Row extends { id: string }>(props: Props<Row>) {
     onFocus(row.id);
     body.current?.querySelectorAll<HTMLElement>('tr')[index]?.focus();
   };
+  // The list is the page's main control: arrows work before anything is in focus.
+  useEffect(() => {
+    const begin = (event: globalThis.KeyboardEvent) => {
+      if (event.target !== document.body || (event.key !== 'ArrowDown' && event.key !== 'ArrowUp')) return;
+      event.preventDefault();
+      focusRow(
+        Math.min(rows.length - 1, Math.max(0, at < 0 ? 0 : at + (event.key === 'ArrowDown' ? 1 : -1))),
+      );
+    };
+    addEventListener('keydown', begin);
+    return () => removeEventListener('keydown', begin);
+  });
   const toggle = (id: string) => {
     const next = new Set(picked);
     if (!next.delete(id)) next.add(id);
@@ -101,7 +116,7 @@ export function DataTable<Row extends { id: string }>(props: Props<Row>) {
 
   const all = rows.length > 0 && rows.every((row) => picked.has(row.id));
   return (
-    <table className="rows" aria-label={props.label}>
+    <table className="rows" aria-label={props.label} data-density={props.density}>
       <thead>
         <tr>
           <th className="w-8">

@@ -1,4 +1,4 @@
-import { useEffect, useRef, useState } from 'react';
+import { useEffect, useRef, useState, type ReactNode } from 'react';
 
 interface Choice {
   name: string;
@@ -11,12 +11,14 @@ interface Props {
   change: (changes: Record<string, string | null>) => void;
   choices: Choice[];
   placeholder: string;
+  /** Stands at the end of the bar on wide windows. */
+  children?: ReactNode;
 }
 
 const typingPauseMilliseconds = 250;
 
 /** Text and choices that narrow a list; all of them live in the address. `/` goes to the text. */
-export function FilterBar({ params, change, choices, placeholder }: Props) {
+export function FilterBar({ params, change, choices, placeholder, children }: Props) {
   const [text, setText] = useState(params.get('q') ?? '');
   const input = useRef<HTMLInputElement>(null);
   useEffect(() => {
@@ -40,23 +42,26 @@ export function FilterBar({ params, change, choices, placeholder }: Props) {
   return (
     <form
       role="search"
-      className="my-3 flex flex-wrap items-center gap-2"
+      className="my-3 flex flex-wrap items-center gap-2 max-sm:grid max-sm:grid-cols-2"
       onSubmit={(event) => event.preventDefault()}
     >
       <input
         ref={input}
         type="search"
         aria-label="Find"
-        className="field w-60!"
+        className="field max-sm:col-span-2 sm:w-60!"
         placeholder={placeholder}
         value={text}
         onChange={(event) => setText(event.target.value)}
       />
       {choices.map((choice) => (
-        <label key={choice.name} className="field flex w-auto! items-center gap-1.5 border-hairline! py-0!">
+        <label
+          key={choice.name}
+          className="field flex w-auto! min-w-0 items-center gap-1.5 border-hairline! py-0! focus-within:border-teal!"
+        >
           <span className="font-semibold">{choice.label}</span>
           <select
-            className="min-h-[30px] bg-sheet text-ink"
+            className="min-h-[30px] max-w-40 min-w-0 flex-1 bg-sheet text-ink"
             value={params.get(choice.name) ?? ''}
             onChange={(event) => change({ [choice.name]: event.target.value })}
           >
@@ -82,7 +87,11 @@ export function FilterBar({ params, change, choices, placeholder }: Props) {
         </button>
       )}
       <span className="ml-auto hidden text-[12.5px] text-muted lg:inline">
-        <kbd>↑</kbd> <kbd>↓</kbd> move · <kbd>space</kbd> pick · <kbd>enter</kbd> open · <kbd>/</kbd> find
+        {children ?? (
+          <>
+            <kbd>↑</kbd> <kbd>↓</kbd> move · <kbd>space</kbd> pick · <kbd>enter</kbd> open · <kbd>/</kbd> find
+          </>
+        )}
       </span>
     </form>
   );
