@@ -14,6 +14,7 @@ import { Line } from 'react-chartjs-2';
 import type { Passage } from '@/domain/api/deliverables.ts';
 import { formatDuration, formatTimecode } from '@/domain/figures-text.ts';
 import { readColours, type Colours } from './colours.ts';
+import { timeTicks } from './time-ticks.ts';
 import { passageDrawing, peakBand, type Draught, type Drawn } from './drawing.ts';
 
 ChartJs.register(LineController, LineElement, PointElement, LinearScale, Filler, Decimation);
@@ -32,6 +33,8 @@ interface Props {
 }
 
 const lowest = -48;
+/** Seconds: closer than this there is nothing more to see. */
+const shortest = 2;
 const points = (values: readonly (number | null)[], step: number) =>
   values.map((y, i) => ({ x: (i + 1) * step, y: y === null ? NaN : Math.max(y, lowest) }));
 
@@ -134,7 +137,7 @@ export function PassageChart({
       plugins: {
         decimation: { enabled: true, algorithm: 'min-max' },
         zoom: {
-          limits: { x: { min: 0, max: length, minRange: 2 } },
+          limits: { x: { min: 0, max: length, minRange: shortest } },
           pan: {
             enabled: true,
             mode: 'x',
@@ -150,13 +153,33 @@ export function PassageChart({
       },
     }),
     // What is shown is set once; from then on the chart's own zoom holds it.
-    // eslint-disable-next-line react-hooks/exhaustive-deps
     [colours, length, top],
   );
   const showAll = () => {
     // Not the plugin's reset: that goes back to the stretch which the address gave.
     chart.current?.zoomScale('x', { min: 0, max: length });
     onShown?.(null);
+  };
+  const show = (from: number, span: number) => {
+    const width = Math.min(length, Math.max(shortest, span));
+    const min = Math.min(length - width, Math.max(0, from));
+    chart.current?.zoomScale('x', { min, max: min + width });
+    onShown?.([min, min + width]);
+  };
+  /** Around the excursion in hand where it is in sight, otherwise around the middle. */
+  const zoomBy = (factor: number) => {
+    if (!chart.current) return;
+    const { min, max } = chart.current.scales.x;
+    const flag = passage.excursions.find((one) => one.number === current);
+    const at = flag ? flag.startSeconds + flag.lengthSeconds / 2 : NaN;
+    const pivot = at >= min && at <= max ? at : (min + max) / 2;
+    show(pivot - (pivot - min) * factor, (max - min) * factor);
+  };
+  const bringIntoView = ({ startSeconds, lengthSeconds }: Passage['excursions'][number]) => {
+    if (!chart.current) return;
+    const { min, max } = chart.current.scales.x;
+    const middle = startSeconds + lengthSeconds / 2;
+    if (middle < min || middle > max) show(middle - (max - min) / 2, max - min);
   };
   const onKeyDown = (event: KeyboardEvent) => {
     const flags = passage.excursions;
@@ -165,14 +188,14 @@ export function PassageChart({
       event.preventDefault();
       const next = flags[Math.min(flags.length - 1, Math.max(0, at + (event.key === 'ArrowRight' ? 1 : -1)))];
       if (!next) return;
-      bringIntoView(chart.current, next, length, onShown);
+      bringIntoView(next);
       onCurrent?.(next.number);
     } else if (event.key === 'Enter') {
       event.preventDefault();
       onPlayFrom?.(Math.max(0, (flags[at]?.startSeconds ?? 0) - 1));
     } else if (event.key === 'Escape') {
       showAll();
-    } else if (event.key === '+' || event.key === '-') chart.current?.zoom(event.key === '+' ? 1.3 : 0.77);
+    } else if (event.key === '+' || event.key === '-') zoomBy(event.key === '+' ? 0.7 : 1 / 0.7);
   };
   const label = `Loudness over ${formatTimecode(length)}; ${passage.excursions.length === 0 ? 'no limit is passed' : `${passage.excursions.length} excursions, listed beneath`}. Arrow keys move by excursion, Enter plays from there, plus and minus zoom, Escape shows all.`;
   return (
@@ -187,7 +210,7 @@ export function PassageChart({
         </button>
       )}
       {/* The chart is one composite control: its flags are walked by key and listed as text beneath it. */}
-      {/* eslint-disable-next-line jsx-a11y/no-noninteractive-element-interactions, jsx-a11y/no-noninteractive-tabindex */}
+      {/* eslint-disable jsx-a11y/no-noninteractive-element-interactions, jsx-a11y/no-noninteractive-tabindex */}
       <div
         role="application"
         aria-label={label}
@@ -212,33 +235,5 @@ export function PassageChart({
         )}
       </div>
     </div>
-  );
-}
-
-/** Moves the stretch shown so that an excursion outside it stands in its middle. */
-function bringIntoView(
-  chart: ChartJs<'line'> | null,
-  { startSeconds, lengthSeconds }: Passage['excursions'][number],
-  length: number,
-  onShown: Props['onShown'],
-): void {
-  if (!chart) return;
-  const { min, max } = chart.scales.x;
-  const middle = startSeconds + lengthSeconds / 2;
-  if (middle >= min && middle <= max) return;
-  const from = Math.min(length - (max - min), Math.max(0, middle - (max - min) / 2));
-  chart.zoomScale('x', { min: from, max: from + max - min });
-  onShown?.([from, from + max - min]);
-}
-
-/** Round times, far enough apart for their labels. */
-export function timeTicks(min: number, max: number, width: number): number[] {
-  const most = Math.max(2, width / 78);
-  const step =
-    [1, 2, 5, 10, 15, 30, 60, 120, 300, 600, 900, 1800, 3600].find((s) => (max - min) / s <= most) ?? 7200;
-  const first = Math.ceil(min / step - 1e-9);
-  return Array.from(
-    { length: Math.max(0, Math.floor(max / step + 1e-9) - first + 1) },
-    (_, i) => (first + i) * step,
   );
 }

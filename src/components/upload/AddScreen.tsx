@@ -45,7 +45,6 @@ function Screen({ channels, programmes, unfinished }: Props) {
   useEffect(() => {
     if (mine.length > 0) refresh();
     // Read anew when a file begins or has arrived, and not with every byte.
-    // eslint-disable-next-line react-hooks/exhaustive-deps
   }, [arrivals]);
   const rows = useQuery({
     queryKey: ['arriving'],
