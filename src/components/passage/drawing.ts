@@ -1,7 +1,8 @@
 /** What the passage chart draws itself over Chart.js's surface: peaks from the top, draught marks, hatching, flags. */
 import type { Chart, Plugin } from 'chart.js';
 import type { Passage } from '@/domain/api/deliverables.ts';
-import { formatLevel, formatLimit } from '@/domain/figures-text.ts';
+import { formatLevel, formatLimit, roundHalfAway } from '@/domain/figures-text.ts';
+import type { SpecBody } from '@/domain/spec.ts';
 import type { Colours } from './colours.ts';
 
 /** A limit of the spec on the scale of loudness or of true peak. */
@@ -9,7 +10,14 @@ export interface Draught {
   value: number;
   of: 'shortTerm' | 'momentary' | 'truePeak' | 'target';
   breach: 'reject' | 'advise';
+  /** As the spec judges: what still passes above `value`, and whether figures are rounded first. */
+  tolerance: number;
+  rounding: SpecBody['rounding'];
 }
+
+/** The same answer as the judge and the list of excursions give. */
+const isBeyond = ({ value: limit, tolerance, rounding }: Draught, value: number): boolean =>
+  (rounding === 'shown' ? roundHalfAway(value, 1) : value) > limit + tolerance + 1e-9;
 
 export interface Drawn {
   passage: Passage;
@@ -84,7 +92,7 @@ function drawPeaks(chart: Chart, { passage, draughts, colours }: Drawn): void {
     passage.truePeakDbtp,
     passage.stepSeconds,
     (x, value) => {
-      const beyond = limit && Math.round(value * 10) / 10 > limit.value;
+      const beyond = limit && isBeyond(limit, value);
       ctx.fillStyle = beyond ? tone(colours, limit.breach) : colours.muted;
       ctx.globalAlpha = beyond ? 1 : 0.45;
       ctx.fillRect(x, top, beyond ? 2 : 1, Math.max(0, peakY(chart, value) - top));
@@ -117,7 +125,7 @@ function drawBeyond(chart: Chart, { passage, draughts, colours }: Drawn): void {
     ctx.fillStyle = hatched(ctx, tone(colours, draught.breach), colours.sheet);
     columns(chart, values, passage.stepSeconds, (x, value) => {
       const surface = Math.max(chartArea.top, scales.y.getPixelForValue(value));
-      if (Math.round(value * 10) / 10 > draught.value) ctx.fillRect(x, surface, 1, Math.max(2, y - surface));
+      if (isBeyond(draught, value)) ctx.fillRect(x, surface, 1, Math.max(2, y - surface));
     });
   }
 }
