@@ -61,6 +61,14 @@ const sentences: Record<string, (detail: Detail) => string> = {
   'submission.note_added': (d) => `wrote a note on ${delivery(d)}${toChannel(d)}`,
   'spec.created': (d) => `made the spec ${named(d, '')}`.trim(),
   'spec.published': (d) => `published ${named(d, 'a spec')}${version(d)}`,
+  'spec.draft_discarded': (d) => `discarded the draft of ${named(d, 'a spec')}`,
+  'channel.spec_assigned': (d) =>
+    `held ${text(d, 'channelName', 'name') ?? 'a channel'} to ${text(d, 'specName') ?? 'a spec'}`,
+  'channel.assignment_taken_back': (d) =>
+    `took back that ${text(d, 'channelName', 'name') ?? 'a channel'} is held to ${text(d, 'specName') ?? 'a spec'}`,
+  'agreement.made': (d) =>
+    `gave ${named(d, 'a supplier')} leave to deliver to ${text(d, 'channelName') ?? 'a channel'}`,
+  'agreement.ended': (d) => `ended the agreement with ${named(d, 'a supplier')}${toChannel(d)}`,
   'channel.created': (d) => `made the channel ${named(d, '')}`.trim(),
   'channel.changed': (d) => `changed the channel ${named(d, '')}`.trim(),
 };

@@ -21,6 +21,11 @@ describe('an event in words', () => {
     ['deliverable.uploaded', { ...delivery, programmeTitle: null }, 'uploaded tallow_104.wav'],
     ['spec.published', { name: 'Harrow long form', number: 3 }, 'published Harrow long form version 3'],
     [
+      'agreement.made',
+      { name: 'Two Rooks Studio', channelName: 'Harrow One' },
+      'gave Two Rooks Studio leave to deliver to Harrow One',
+    ],
+    [
       'member.invited',
       { email: 'a@people.example', roles: ['QC operator', 'Spec owner'] },
       'invited a@people.example as QC operator and Spec owner',
@@ -37,8 +42,8 @@ describe('an event in words', () => {
   });
 
   it('reads as its name says where no sentence was written for it', () => {
-    expect(activitySentence('agreement.ended', { channelName: 'Harrow One' })).toBe(
-      'agreement ended: Harrow One',
+    expect(activitySentence('guest.link_made', { channelName: 'Harrow One' })).toBe(
+      'guest link made: Harrow One',
     );
     expect(activitySentence('constructor', {})).toBe('constructor');
   });

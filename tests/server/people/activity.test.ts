@@ -102,12 +102,12 @@ describe('activity', () => {
     const { operator } = await pair();
     await recordEvent(db(), operator, {
       organisationId: operator.organisationId,
-      action: 'spec.draft_discarded',
+      action: 'spec.looked_at',
       subjectKind: 'spec',
       subjectId: 'x',
       detail: { name: 'Long form' },
     });
-    expect((await sentences(operator)).said).toEqual(['spec draft discarded: Long form']);
+    expect((await sentences(operator)).said).toEqual(['spec looked at: Long form']);
   });
 
   it('is never changed or deleted by the application', async () => {
