@@ -227,6 +227,9 @@ export function PassageChart({
             data={data}
             options={options}
             plugins={[drawing]}
+            // Its name and its keys are the frame's; what it shows stands as text beneath.
+            role="presentation"
+            aria-hidden="true"
             onDoubleClick={(event) => {
               const x = chart.current?.scales.x.getValueForPixel(event.nativeEvent.offsetX);
               if (x !== undefined) onPlayFrom?.(Math.max(0, x));
