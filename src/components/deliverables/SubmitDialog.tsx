@@ -26,6 +26,7 @@ export function SubmitDialog({ rows, onClose, onDone }: Props) {
         ['awaiting_review', 'approved', 'approved_with_waiver'].includes(channel.submission.state),
     })),
   );
+  const homeless = rows.filter((row) => row.channels.length === 0);
   const [left, setLeft] = useState<Set<string>>(
     new Set(pairs.filter((pair) => pair.open || !pair.channel.verdict).map((pair) => pair.id)),
   );
@@ -61,6 +62,9 @@ export function SubmitDialog({ rows, onClose, onDone }: Props) {
       {pairs.length === 0 && (
         <Notice tone="refused">None of these is for a channel yet. Set their channels first.</Notice>
       )}
+      {pairs.length > 0 && homeless.length > 0 && (
+        <p className="text-muted">Left out, being for no channel yet: {homeless.map(rowName).join(', ')}.</p>
+      )}
       <ul className="grid max-h-[40vh] gap-1 overflow-y-auto">
         {pairs.map(({ id, row, channel, open }) => (
           <li key={id}>
@@ -95,7 +99,7 @@ export function SubmitDialog({ rows, onClose, onDone }: Props) {
           </li>
         ))}
       </ul>
-      <label className="grid max-w-60 gap-1">
+      <label className="grid max-w-80 gap-1">
         <span className="text-[13px] font-medium">Airs (this computer's time), if known</span>
         <input
           type="datetime-local"

@@ -15,7 +15,7 @@ export function Dialog({ title, onClose, children, wide = false }: Props) {
       isOpen
       isDismissable
       onOpenChange={(open) => !open && onClose()}
-      className="fixed inset-0 z-50 grid place-items-center overflow-y-auto bg-ink/40 p-3"
+      className="fixed inset-0 z-50 grid place-items-center overflow-y-auto bg-ground/75 p-3"
     >
       <Modal className={`w-full border border-ink bg-sheet text-ink ${wide ? 'max-w-3xl' : 'max-w-lg'}`}>
         <AriaDialog className="grid gap-4 p-5 outline-none">

@@ -203,7 +203,7 @@ export function PassageChart({
       {shown && (
         <button
           type="button"
-          className="absolute -top-7 right-0 z-10 bg-sheet text-[12.5px] text-teal underline underline-offset-4"
+          className="absolute right-0 bottom-1.5 z-10 text-[12.5px] text-teal underline underline-offset-4"
           onClick={showAll}
         >
           Show all
