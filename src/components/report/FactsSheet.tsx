@@ -42,7 +42,7 @@ export function FactsSheet({ measurement, fileName, byteSize, sha256 }: Props) {
             <Figure value={l.relativeThresholdLufs} unit="LUFS" />
           </Row>
           <Row name="Loudness range">
-            {figures.measuredSeconds < 60 && (
+            {l.rangeLu !== null && figures.measuredSeconds < 60 && (
               <span className="text-[12px] text-muted">short for a range </span>
             )}
             <Figure value={l.rangeLu} unit="LU" />

@@ -125,7 +125,7 @@ function Panel({ passageUrl, audioUrl, specBody, integratedLufs, search, compact
           and is never louder than the file.
         </p>
       </section>
-      {passage.data && (
+      {passage.data && specBody && (
         <Excursions
           passage={passage.data}
           current={current}
