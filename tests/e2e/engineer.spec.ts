@@ -23,6 +23,8 @@ test('a mix engineer adds masters, sees them measured and judged, reads a report
   await page.locator('input[type="file"]').setInputFiles([loud, right]);
   const table = page.getByRole('table', { name: 'Files on their way' });
   await expect(table.getByRole('row')).toHaveCount(3);
+  // A row can be picked once the server knows its file.
+  await expect(page.getByRole('checkbox', { name: /^Pick tallow/ })).toHaveCount(2);
   await page.getByRole('checkbox', { name: 'Pick all' }).check();
   await page.getByRole('button', { name: /Set details of 2 picked/ }).click();
   const dialog = page.getByRole('dialog');
@@ -61,8 +63,8 @@ test('a report reads without JavaScript, and a foreign organisation does not fin
   const plain = await browser.newContext({ javaScriptEnabled: false });
   const page = await plain.newPage();
   await page.goto(`${origin()}/sign-in`);
-  await page.locator('input[name="email"]').fill('mix@copperkettle.example');
-  await page.locator('input[name="password"]').fill('load-line-demo');
+  await page.locator('#email').fill('mix@copperkettle.example');
+  await page.locator('#password').fill('load-line-demo');
   await page.getByRole('button', { name: 'Sign in', exact: true }).click();
   await page.goto(`${origin()}/deliverables?q=tallow_201`);
   await page.getByRole('link', { name: 'The Tallow Road' }).first().click();

@@ -18,8 +18,8 @@ export async function openAs(
   page.on('console', (message) => message.type() === 'error' && consoleErrors.push(message.text()));
   page.on('pageerror', (error) => consoleErrors.push(error.message));
   await page.goto(`${origin()}/sign-in`);
-  await page.locator('input[name="email"]').fill(email);
-  await page.locator('input[name="password"]').fill('load-line-demo');
+  await page.locator('#email').fill(email);
+  await page.locator('#password').fill('load-line-demo');
   await page.getByRole('button', { name: 'Sign in', exact: true }).click();
   await page.waitForURL((url) => !url.pathname.startsWith('/sign-in'));
   return { page, consoleErrors };
