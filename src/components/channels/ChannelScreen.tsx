@@ -49,7 +49,9 @@ function Screen({ initial, isOwn }: Props) {
       <div className="flex flex-wrap items-start justify-between gap-3">
         <div>
           <p className="text-[13px]">
-            <a href="/channels">Channels</a>{' '}
+            <a href="/channels" className="underline decoration-hairline decoration-2 underline-offset-2">
+              Channels
+            </a>{' '}
             <span className="text-muted">of {channel.organisation.name}</span>
           </p>
           <h1>{channel.name}</h1>
@@ -161,7 +163,12 @@ function Line({
   const moment = new Intl.DateTimeFormat('en-GB', { timeZone, dateStyle: 'medium', timeStyle: 'short' });
   return (
     <p className="flex flex-wrap items-center gap-x-3 gap-y-1">
-      <a href={`/specs/${assignment.specId}`}>{assignment.specName}</a>
+      <a
+        href={`/specs/${assignment.specId}`}
+        className="underline decoration-hairline decoration-2 underline-offset-2"
+      >
+        {assignment.specName}
+      </a>
       <span className="text-muted">
         {assignment.standing === 'now' ? 'since' : 'from'} {moment.format(new Date(assignment.inForceFrom))}
       </span>

@@ -69,7 +69,10 @@ function Screen({ initial, mayEdit, ownOrganisationId, timeZone }: Props) {
               return (
                 <tr key={channel.id} className={cells}>
                   <td className="py-1.5!">
-                    <a href={`/channels/${channel.id}`} className="font-medium">
+                    <a
+                      href={`/channels/${channel.id}`}
+                      className="font-medium underline decoration-hairline decoration-2 underline-offset-2"
+                    >
                       {channel.name}
                     </a>
                     {channel.organisation.id !== ownOrganisationId && (
@@ -82,7 +85,12 @@ function Screen({ initial, mayEdit, ownOrganisationId, timeZone }: Props) {
                     {now.map((assignment) => (
                       <span key={assignment.id} className="block">
                         <span className="text-muted">{contentKindNames[assignment.contentKind]}: </span>
-                        <a href={`/specs/${assignment.specId}`}>{assignment.specName}</a>
+                        <a
+                          href={`/specs/${assignment.specId}`}
+                          className="underline decoration-hairline decoration-2 underline-offset-2"
+                        >
+                          {assignment.specName}
+                        </a>
                       </span>
                     ))}
                   </td>

@@ -102,8 +102,16 @@ function Screen({ initial, timeZone }: Props) {
         <div className="flex flex-wrap items-start justify-between gap-3">
           <div>
             <p className="text-[13px]">
-              <a href="/specs">Specs</a> <span className="text-muted">/</span>{' '}
-              <a href={`/specs/${spec.id}`}>{spec.name}</a>
+              <a href="/specs" className="underline decoration-hairline decoration-2 underline-offset-2">
+                Specs
+              </a>{' '}
+              <span className="text-muted">/</span>{' '}
+              <a
+                href={`/specs/${spec.id}`}
+                className="underline decoration-hairline decoration-2 underline-offset-2"
+              >
+                {spec.name}
+              </a>
             </p>
             <h1>{draft ? 'Draft' : 'New version'}</h1>
           </div>

@@ -13,6 +13,15 @@ const finite = (text: string): number | null => {
 };
 const tidy = (value: number) => roundHalfAway(value, 3);
 
+const factHints: Record<string, string> = {
+  sampleRateHz: 'In Hz, with commas between: 48000, 44100',
+  bitDepth: 'Bits per sample, with commas between: 24, 16',
+  layout: 'With commas between: mono, stereo, 5.1, 7.1',
+  container: 'With commas between: WAV, RF64, BW64, AIFF, FLAC, MP3, MP4, MOV, MXF',
+  codec: 'With commas between: PCM, FLAC, MP3, AAC',
+  audioChannels: 'How many, with commas between: 2, 6',
+};
+
 /** What a rule is about, in the trade's words. */
 export function subjectName(rule: Pick<RuleForm, 'kind' | 'metric' | 'fact' | 'code'>): string {
   if (rule.kind === 'oneOf') return factNames[rule.fact as keyof typeof factNames];
@@ -62,7 +71,7 @@ export function RuleFields({ index, onRemove }: Props) {
             <span className="text-[13px] text-muted">A breach</span>
             <select className="field w-auto!" {...register(at('breach'))}>
               <option value="reject">rejects</option>
-              <option value="advise">is advised of</option>
+              <option value="advise">advises</option>
             </select>
           </label>
           <button type="button" className="btn btn-quiet" aria-label={`Remove ${name}`} onClick={onRemove}>
@@ -71,7 +80,9 @@ export function RuleFields({ index, onRemove }: Props) {
         </div>
       </div>
       <div className="grid gap-x-8 gap-y-3 lg:grid-cols-[minmax(0,1fr)_minmax(0,34rem)]">
-        <div className="grid content-start gap-3 sm:grid-cols-2">
+        <div
+          className={`grid content-start gap-3 ${rule.kind === 'integrated' ? 'sm:grid-cols-2' : 'sm:grid-cols-3'}`}
+        >
           {rule.kind === 'integrated' && (
             <>
               {input('targetLufs', `Target (${unit})`)}
@@ -86,16 +97,14 @@ export function RuleFields({ index, onRemove }: Props) {
             </>
           )}
           {rule.kind === 'oneOf' && (
-            <div className="sm:col-span-2">
-              {input('allowed', 'One of', 'Commas between; rates in Hz, depths in bits: 48000, 44100')}
-            </div>
+            <div className="sm:col-span-3">{input('allowed', 'One of', factHints[rule.fact] ?? '')}</div>
           )}
           {rule.kind === 'finding' && (
-            <p className="text-muted sm:col-span-2">A file with this finding breaches the rule.</p>
+            <p className="text-muted sm:col-span-3">A file with this finding breaches the rule.</p>
           )}
           {isNumeric && input('measurementTolerance', `Measurement tolerance (${marginUnit})`, '0: off')}
           {rule.kind === 'limits' && rule.metric === 'rangeLu' && (
-            <label className="flex items-center gap-2 sm:col-span-2">
+            <label className="flex items-center gap-2 sm:col-span-3">
               <input type="checkbox" {...register(at('judgeShortProgrammes'))} />
               Judge programmes of under 60 s too
             </label>

@@ -52,7 +52,10 @@ export function RulesSheet({ body }: { body: SpecBody }) {
               <td className="py-1.5! max-md:empty:hidden md:w-[330px]">
                 <Recess rule={rule} unit={body.unit} width={300} />
               </td>
-              <td>{rule.breach === 'reject' ? 'rejects' : 'is advised of'}</td>
+              <td>
+                <span className="md:hidden">a breach </span>
+                {rule.breach === 'reject' ? 'rejects' : 'advises'}
+              </td>
               <td className="num text-muted">
                 {rule.measurementTolerance > 0 ? (
                   <>

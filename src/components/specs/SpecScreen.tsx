@@ -64,7 +64,10 @@ function Screen({ initial, search, timeZone }: Props) {
       <div className="flex flex-wrap items-start justify-between gap-3">
         <div>
           <p className="text-[13px]">
-            <a href="/specs">Specs</a> <span className="text-muted">of {spec.organisation.name}</span>
+            <a href="/specs" className="underline decoration-hairline decoration-2 underline-offset-2">
+              Specs
+            </a>{' '}
+            <span className="text-muted">of {spec.organisation.name}</span>
           </p>
           <h1>{spec.name}</h1>
         </div>
@@ -152,7 +155,12 @@ function Screen({ initial, search, timeZone }: Props) {
               <ul>
                 {spec.usedBy.map((use) => (
                   <li key={`${use.channelId}/${use.contentKind}`}>
-                    <a href={`/channels/${use.channelId}`}>{use.channelName}</a>
+                    <a
+                      href={`/channels/${use.channelId}`}
+                      className="underline decoration-hairline decoration-2 underline-offset-2"
+                    >
+                      {use.channelName}
+                    </a>
                     <span className="text-muted">, {contentKindNames[use.contentKind].toLowerCase()}</span>
                   </li>
                 ))}

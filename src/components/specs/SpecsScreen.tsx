@@ -74,7 +74,10 @@ function Screen({ initial, mayEdit, ownOrganisationId, timeZone }: Props) {
             {data.items.map((spec) => (
               <tr key={spec.id} className={cells}>
                 <td className="py-1.5!">
-                  <a href={`/specs/${spec.id}`} className="font-medium">
+                  <a
+                    href={`/specs/${spec.id}`}
+                    className="font-medium underline decoration-hairline decoration-2 underline-offset-2"
+                  >
                     {spec.name}
                   </a>
                   {spec.hasDraft && <span className="text-brass"> draft open</span>}
