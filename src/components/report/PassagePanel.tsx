@@ -10,6 +10,7 @@ import { passageSchema, type Passage } from '@/domain/api/deliverables.ts';
 import { formatLevel, formatTimecode } from '@/domain/figures-text.ts';
 import type { SpecBody } from '@/domain/spec.ts';
 import type { Excursion } from '@/domain/verdict.ts';
+import { curveName } from './curve-name.ts';
 
 interface Props {
   passageUrl: string;
@@ -176,7 +177,7 @@ function Excursions({ passage, current, compact, onPlay }: ExcursionsProps) {
                     {one.number}
                   </span>
                 </td>
-                <td>{one.name}</td>
+                <td>{curveName(one)}</td>
                 <td className="num">{formatTimecode(one.startSeconds)}</td>
                 <td className="n num max-sm:hidden">{formatLevel(one.lengthSeconds)} s</td>
                 <td className={`n num font-semibold ${one.breach === 'reject' ? 'text-hull' : 'text-brass'}`}>

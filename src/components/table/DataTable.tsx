@@ -200,7 +200,7 @@ export function DataTable<Row extends { id: string }>(props: Props<Row>) {
         })}
         {rows.length === 0 && (
           <tr>
-            <td colSpan={columns.length + 1} className="py-8!">
+            <td colSpan={columns.length + 1} className="py-8! whitespace-normal!">
               {props.empty}
             </td>
           </tr>
