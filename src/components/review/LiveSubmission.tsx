@@ -2,22 +2,24 @@ import { useEffect, useState } from 'react';
 import { api } from '@/components/live/api.ts';
 import { useLiveEvents } from '@/components/live/use-live-events.ts';
 import { presenceSchema, type SubmissionRow } from '@/domain/api/submissions.ts';
+import { withoutMe } from './review-list.ts';
 
 interface Props {
   id: string;
   version: number;
   decides: boolean;
+  ownUserId: string;
   openBy: SubmissionRow['openBy'];
 }
 
 const presenceEveryMs = 15_000;
 
 /** Who else has the report open, and that it has changed since it was drawn. What is being written is never thrown away. */
-export default function LiveSubmission({ id, version, decides, openBy: initial }: Props) {
+export default function LiveSubmission({ id, version, decides, ownUserId, openBy: initial }: Props) {
   const [openBy, setOpenBy] = useState(initial);
   const [changed, setChanged] = useState(false);
   useLiveEvents((event) => {
-    if (event.kind === 'presence' && event.submissionId === id) setOpenBy(event.openBy);
+    if (event.kind === 'presence' && event.submissionId === id) setOpenBy(withoutMe(event.openBy, ownUserId));
     if (event.kind === 'submission' && event.id === id && event.version !== version) setChanged(true);
   });
   useEffect(() => {

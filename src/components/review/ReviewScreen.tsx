@@ -24,6 +24,7 @@ import {
   showOf,
   shows,
   whyNoDecision,
+  withoutMe,
 } from './review-list.ts';
 import { SidePanel } from './SidePanel.tsx';
 import { useDecisions, type Decision } from './use-decisions.ts';
@@ -38,6 +39,7 @@ interface Props {
   /** The organisation's side: its queue, or its own submissions. */
   isQueue: boolean;
   mayDecide: boolean;
+  ownUserId: string;
   /** The server's clock when it drew the page, so that both draw the same. */
   now: string;
 }
@@ -53,7 +55,7 @@ export default function ReviewScreen(props: Props) {
 type Open =
   { kind: 'reject'; rows: SubmissionRow[] } | { kind: 'waive'; row: SubmissionRow } | { kind: 'keys' };
 
-function Screen({ initial, search, channels, suppliers, isQueue, mayDecide, now }: Props) {
+function Screen({ initial, search, channels, suppliers, isQueue, mayDecide, ownUserId, now }: Props) {
   const [params, change] = useAddressState(search);
   const [picked, setPicked] = useState<Set<string>>(new Set());
   const [dialog, setDialog] = useState<Open | null>(null);
@@ -92,7 +94,9 @@ function Screen({ initial, search, channels, suppliers, isQueue, mayDecide, now 
 
   useLiveEvents((event) => {
     if (event.kind === 'presence')
-      client.setQueryData(key, (data: InfiniteData<List> | undefined) => withPresence(data, event));
+      client.setQueryData(key, (data: InfiniteData<List> | undefined) =>
+        withPresence(data, event.submissionId, withoutMe(event.openBy, ownUserId)),
+      );
     else if (event.kind === 'submission' || event.kind === 'again')
       void client.invalidateQueries({ queryKey: ['submissions'] });
   });
@@ -222,8 +226,8 @@ function Screen({ initial, search, channels, suppliers, isQueue, mayDecide, now 
           </Notice>
         </div>
       )}
-      <div className="grid grid-cols-[minmax(0,1fr)] gap-5 lg:grid-cols-[minmax(0,1fr)_390px]">
-        <div className="overflow-x-auto">
+      <div className="grid grid-cols-[minmax(0,1fr)] gap-5 lg:grid-cols-[minmax(0,1fr)_352px]">
+        <div className="overflow-x-auto text-[13px] [&_td]:px-1.5! [&_th]:px-1.5!">
           <DataTable
             label={isQueue ? 'Review queue' : 'Submissions'}
             rows={rows}
@@ -258,7 +262,7 @@ function Screen({ initial, search, channels, suppliers, isQueue, mayDecide, now 
             </button>
           )}
         </div>
-        <div className="hidden lg:block">
+        <div className="hidden content-start lg:block">
           {focused ? (
             <SidePanel
               row={focused}
@@ -299,16 +303,15 @@ function Screen({ initial, search, channels, suppliers, isQueue, mayDecide, now 
 
 function withPresence(
   data: InfiniteData<List> | undefined,
-  event: { submissionId: string; openBy: SubmissionRow['openBy'] },
+  id: string,
+  openBy: SubmissionRow['openBy'],
 ): InfiniteData<List> | undefined {
   return (
     data && {
       ...data,
       pages: data.pages.map((page) => ({
         ...page,
-        items: page.items.map((row) =>
-          row.id === event.submissionId ? { ...row, openBy: event.openBy } : row,
-        ),
+        items: page.items.map((row) => (row.id === id ? { ...row, openBy } : row)),
       })),
     }
   );

@@ -77,7 +77,7 @@ export function SidePanel({ row, decides, busy, onApprove, onReject, onWaive }: 
               atMost={rule.atMost}
               outcome={rule.outcome}
               size="row"
-              width={356}
+              width={318}
               label={`${rule.name} ${rule.judgedText} ${rule.unit}, ${rule.marginText}`}
             />
           )}
@@ -120,11 +120,17 @@ export function SidePanel({ row, decides, busy, onApprove, onReject, onWaive }: 
               onClick={onReject}
               aria-keyshortcuts="r"
             >
-              Reject… <kbd aria-hidden="true">r</kbd>
+              Reject…{' '}
+              <kbd aria-hidden="true" className="border-current! text-current!">
+                r
+              </kbd>
             </button>
             {fails ? (
               <button type="button" className="btn" disabled={busy} onClick={onWaive} aria-keyshortcuts="w">
-                Waive… <kbd aria-hidden="true">w</kbd>
+                Waive…{' '}
+                <kbd aria-hidden="true" className="border-current! text-current!">
+                  w
+                </kbd>
               </button>
             ) : (
               <button
@@ -134,7 +140,10 @@ export function SidePanel({ row, decides, busy, onApprove, onReject, onWaive }: 
                 onClick={onApprove}
                 aria-keyshortcuts="a"
               >
-                Approve <kbd aria-hidden="true">a</kbd>
+                Approve{' '}
+                <kbd aria-hidden="true" className="border-current! text-current!">
+                  a
+                </kbd>
               </button>
             )}
           </div>

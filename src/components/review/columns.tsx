@@ -6,6 +6,13 @@ import type { SubmissionRow } from '@/domain/api/submissions.ts';
 import { submissionStateNames } from '@/domain/vocabulary.ts';
 import { momentText, rowName } from './review-list.ts';
 
+/** One line; what does not fit is in the title, and whole in the panel. */
+const Short = ({ text, width }: { text: string; width: string }) => (
+  <span className={`inline-block truncate align-middle ${width}`} title={text}>
+    {text}
+  </span>
+);
+
 /** Columns of the queue; the other side is the supplier for a distributor and the distributor for a supplier. */
 export function submissionColumns(
   decides: boolean,
@@ -23,29 +30,55 @@ export function submissionColumns(
       header: 'Programme, episode',
       meta: { sort: 'programme' },
       cell: ({ row: { original: row } }) => (
-        <a href={`/review/${row.id}`} tabIndex={-1} className="no-underline hover:underline">
-          {row.programmeTitle ? (
-            <>
-              {row.programmeTitle} <span className="text-muted">{row.episodeLabel}</span>
-            </>
-          ) : (
-            <span className="num text-[12.5px] break-all">{rowName(row)}</span>
+        <span className="flex items-baseline gap-2">
+          <a
+            href={`/review/${row.id}`}
+            tabIndex={-1}
+            title={rowName(row)}
+            className="no-underline hover:underline sm:max-w-56 sm:truncate"
+          >
+            {row.programmeTitle ? (
+              <>
+                {row.programmeTitle} <span className="text-muted">{row.episodeLabel}</span>
+              </>
+            ) : (
+              <span className="num text-[12.5px] max-sm:break-all">{rowName(row)}</span>
+            )}
+          </a>
+          {row.openBy.length > 0 && (
+            <span
+              className="text-[12px] whitespace-nowrap text-teal"
+              title={`Open by ${row.openBy.map(({ name }) => name).join(', ')} too`}
+            >
+              {row.openBy.length === 1 ? row.openBy[0].name.split(' ')[0] : row.openBy.length} reads it
+            </span>
           )}
-        </a>
+        </span>
       ),
     },
     {
       id: 'other',
       header: decides ? 'Supplier' : 'Distributor',
       meta: { from: 'lg' },
-      cell: ({ row: { original: row } }) => (decides ? row.supplier.name : row.distributor.name),
+      cell: ({ row: { original: row } }) => (
+        <Short text={decides ? row.supplier.name : row.distributor.name} width="max-w-28" />
+      ),
     },
-    { id: 'channel', header: 'Channel', meta: { from: 'sm' }, cell: ({ row }) => row.original.channel.name },
+    {
+      id: 'channel',
+      header: 'Channel',
+      meta: { from: 'sm' },
+      cell: ({ row }) => <Short text={row.original.channel.name} width="max-w-24" />,
+    },
     {
       id: 'integrated',
-      header: 'Integrated',
+      header: () => (
+        <>
+          Integrated<span className="unit">LUFS</span>
+        </>
+      ),
       meta: { figure: true, sort: 'integrated', from: 'md' },
-      cell: ({ row }) => <Figure value={row.original.figures.loudness.integratedLufs} unit="LUFS" />,
+      cell: ({ row }) => <Figure value={row.original.figures.loudness.integratedLufs} />,
     },
     {
       id: 'integrated-line',
@@ -55,9 +88,13 @@ export function submissionColumns(
     },
     {
       id: 'peak',
-      header: 'True peak',
+      header: () => (
+        <>
+          True peak<span className="unit">dBTP</span>
+        </>
+      ),
       meta: { figure: true, sort: 'truePeak', from: 'md' },
-      cell: ({ row }) => <Figure value={row.original.figures.truePeak.maxDbtp} unit="dBTP" />,
+      cell: ({ row }) => <Figure value={row.original.figures.truePeak.maxDbtp} />,
     },
     {
       id: 'peak-line',
@@ -69,7 +106,9 @@ export function submissionColumns(
       id: 'nearest',
       header: 'Nearest limit',
       cell: ({ row: { original: row } }) => (
-        <span className={outcomeTone(row.verdict.outcome)}>{row.verdict.nearestText}</span>
+        <span className={outcomeTone(row.verdict.outcome)}>
+          <Short text={row.verdict.nearestText} width="max-w-28 sm:max-w-46" />
+        </span>
       ),
     },
     {
@@ -78,20 +117,9 @@ export function submissionColumns(
       meta: { figure: true, sort: 'airs', from: 'sm' },
       cell: ({ row: { original: row } }) =>
         row.airAt ? (
-          <span className="num text-[12.5px]">{momentText(row.airAt, row.channel.timeZone, now)}</span>
+          <span className="num text-[12px]">{momentText(row.airAt, row.channel.timeZone, now)}</span>
         ) : (
           <span className="text-[12.5px] text-muted">not said</span>
-        ),
-    },
-    {
-      id: 'open-by',
-      header: () => <span className="sr-only">Open by</span>,
-      meta: { from: 'xl' },
-      cell: ({ row: { original: row } }) =>
-        row.openBy.length > 0 && (
-          <span className="text-[12.5px] text-teal">
-            open by {row.openBy.map(({ name }) => name).join(', ')}
-          </span>
         ),
     },
   ];

@@ -87,7 +87,7 @@ export function countsText({
   return `${wait}, ${airingWithin24h} air${airingWithin24h === 1 ? 's' : ''} within a day`;
 }
 
-/** A moment in the channel's zone, with the zone: '20:00 GMT' on the day that `now` is there, else 'Tue 8 Dec 20:00 GMT'. */
+/** A moment in the channel's zone, with the zone: '20:00 GMT' today, 'Thu 20:00 GMT' in the next days, 'Tue 8 Dec 20:00 GMT'. */
 export function momentText(moment: string, timeZone: string, now: Date): string {
   const partsOf = (date: Date) => {
     const parts = new Intl.DateTimeFormat('en-GB', {
@@ -107,9 +107,16 @@ export function momentText(moment: string, timeZone: string, now: Date): string 
   const today = partsOf(now);
   const time = `${at.hour}:${at.minute} ${at.timeZoneName}`;
   if (at.day === today.day && at.month === today.month && at.year === today.year) return time;
+  const days = (Date.parse(moment) - now.getTime()) / 86_400_000;
+  // Within the next days the weekday is enough.
+  if (days > 0 && days < 6) return `${at.weekday} ${time}`;
   const day = `${at.weekday} ${at.day} ${at.month}`;
   return at.year === today.year ? `${day} ${time}` : `${day} ${at.year} ${time}`;
 }
 
 /** Name of the form field that holds the reason of a rule's waiver. */
 export const waiverField = (ruleId: string): string => `waive:${ruleId}`;
+
+/** Everybody but oneself: a live event tells of all who have it open. */
+export const withoutMe = (openBy: SubmissionRow['openBy'], ownUserId: string): SubmissionRow['openBy'] =>
+  openBy.filter(({ id }) => id !== ownUserId);

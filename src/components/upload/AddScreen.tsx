@@ -163,7 +163,7 @@ function Screen({ channels, programmes, unfinished }: Props) {
         <section className="mt-5">
           <div className="mb-2 flex flex-wrap items-center justify-between gap-3">
             <div className="grid w-full max-w-md gap-1 sm:w-auto sm:grow">
-              <p className="num text-[13px]">
+              <p className={totals.bytesSent < totals.bytes ? 'num text-[13px]' : ''}>
                 {totals.bytesSent < totals.bytes
                   ? progressText(totals.bytesSent, totals.bytes, totals.bytesPerSecond)
                   : 'Everything is sent.'}

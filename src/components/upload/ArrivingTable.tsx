@@ -213,7 +213,7 @@ function MeasuringCell({ row, measuring }: { row: DeliverableRow; measuring: Pro
       {row.channels.map((channel) => (
         <li key={channel.channelId} className="flex flex-wrap items-center gap-x-3">
           <VerdictMark outcome={channel.verdict?.outcome ?? 'not_judged'} />
-          <a href={`/deliverables/${row.id}?channel=${channel.channelId}`}>
+          <a href={`/deliverables/${row.id}?channel=${channel.channelId}`} className={quiet}>
             Report for {channel.channelName}
           </a>
           <span className={outcomeTone(channel.verdict?.outcome ?? 'not_judged')}>

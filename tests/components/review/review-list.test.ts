@@ -92,7 +92,9 @@ describe('moments in the channel’s zone', () => {
   const now = new Date('2026-12-01T12:00:00Z');
   it.each([
     ['2026-12-01T20:00:00Z', 'Europe/London', '20:00 GMT'],
-    ['2026-12-01T23:30:00Z', 'Europe/Berlin', 'Wed 2 Dec 00:30 CET'],
+    ['2026-12-01T23:30:00Z', 'Europe/Berlin', 'Wed 00:30 CET'],
+    ['2026-12-08T20:00:00Z', 'Europe/London', 'Tue 8 Dec 20:00 GMT'],
+    ['2026-11-30T20:00:00Z', 'Europe/London', 'Mon 30 Nov 20:00 GMT'],
     ['2027-01-02T09:05:00Z', 'Europe/London', 'Sat 2 Jan 2027 09:05 GMT'],
   ])('tells %s at %s as %s', (moment, zone, text) => expect(momentText(moment, zone, now)).toBe(text));
 });
