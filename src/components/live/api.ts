@@ -44,16 +44,22 @@ async function ask(method: string, path: string, body?: unknown, signal?: AbortS
   );
 }
 
+/** Sends; the answer through its schema, or `undefined` where the caller asks nothing of it. */
+async function send(method: Writing, path: string, body?: unknown): Promise<undefined>;
+async function send<T extends z.ZodType>(
+  method: Writing,
+  path: string,
+  body: unknown,
+  schema: T,
+): Promise<z.output<T>>;
+async function send(method: Writing, path: string, body?: unknown, schema?: z.ZodType): Promise<unknown> {
+  const answer = await ask(method, path, body);
+  return schema?.parse(answer);
+}
+type Writing = 'POST' | 'PUT' | 'PATCH' | 'DELETE';
+
 export const api = {
   get: async <T extends z.ZodType>(path: string, schema: T, signal?: AbortSignal): Promise<z.output<T>> =>
     schema.parse(await ask('GET', path, undefined, signal)),
-  send: async <T extends z.ZodType>(
-    method: 'POST' | 'PUT' | 'PATCH' | 'DELETE',
-    path: string,
-    body?: unknown,
-    schema?: T,
-  ): Promise<z.output<T>> => {
-    const answer = await ask(method, path, body);
-    return schema ? schema.parse(answer) : (answer as z.output<T>);
-  },
+  send,
 };
