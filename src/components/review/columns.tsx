@@ -61,7 +61,7 @@ export function submissionColumns(
       header: decides ? 'Supplier' : 'Distributor',
       meta: { from: 'lg' },
       cell: ({ row: { original: row } }) => (
-        <Short text={decides ? row.supplier.name : row.distributor.name} width="max-w-28" />
+        <Short text={decides ? row.supplier.name : row.distributor.name} width="max-w-24" />
       ),
     },
     {
@@ -72,11 +72,7 @@ export function submissionColumns(
     },
     {
       id: 'integrated',
-      header: () => (
-        <>
-          Integrated<span className="unit">LUFS</span>
-        </>
-      ),
+      header: 'Integrated',
       meta: { figure: true, sort: 'integrated', from: 'md' },
       cell: ({ row }) => <Figure value={row.original.figures.loudness.integratedLufs} />,
     },
@@ -88,11 +84,7 @@ export function submissionColumns(
     },
     {
       id: 'peak',
-      header: () => (
-        <>
-          True peak<span className="unit">dBTP</span>
-        </>
-      ),
+      header: 'True peak',
       meta: { figure: true, sort: 'truePeak', from: 'md' },
       cell: ({ row }) => <Figure value={row.original.figures.truePeak.maxDbtp} />,
     },
@@ -107,7 +99,7 @@ export function submissionColumns(
       header: 'Nearest limit',
       cell: ({ row: { original: row } }) => (
         <span className={outcomeTone(row.verdict.outcome)}>
-          <Short text={row.verdict.nearestText} width="max-w-28 sm:max-w-46" />
+          <Short text={row.verdict.nearestText} width="max-sm:whitespace-normal! sm:max-w-40" />
         </span>
       ),
     },
