@@ -28,9 +28,14 @@ function isForeign(context: APIContext): boolean {
   return origin !== context.url.origin && origin !== new URL(config().APP_ORIGIN).origin;
 }
 
+/** Astro writes a route's pattern in small letters ('[assignmentid]'), whatever its file is called. */
+const routesByPattern = new Map(
+  Object.entries(routes).map(([pattern, needs]) => [pattern.toLowerCase(), needs]),
+);
+
 /** What the route asks of this method: `undefined` when the policy does not know the route or the method. */
 function needOf(context: APIContext): { known: boolean; need: Need | undefined } {
-  const route = Object.hasOwn(routes, context.routePattern) ? routes[context.routePattern] : undefined;
+  const route = routesByPattern.get(context.routePattern);
   const method = context.request.method === 'HEAD' ? 'GET' : context.request.method;
   return { known: route !== undefined, need: route?.[method as keyof typeof route] };
 }

@@ -45,7 +45,8 @@ function contextOf({
     request,
     url,
     params,
-    routePattern: pattern,
+    // As Astro gives it.
+    routePattern: pattern.toLowerCase(),
     locals: { scope: null },
     clientAddress: '127.0.0.1',
     redirect: (to: string, status = 302) => new Response(null, { status, headers: { location: to } }),
