@@ -61,14 +61,14 @@ export function submissionColumns(
       header: decides ? 'Supplier' : 'Distributor',
       meta: { from: 'lg' },
       cell: ({ row: { original: row } }) => (
-        <Short text={decides ? row.supplier.name : row.distributor.name} width="max-w-24" />
+        <Short text={decides ? row.supplier.name : row.distributor.name} width="max-w-22" />
       ),
     },
     {
       id: 'channel',
       header: 'Channel',
       meta: { from: 'sm' },
-      cell: ({ row }) => <Short text={row.original.channel.name} width="max-w-24" />,
+      cell: ({ row }) => <Short text={row.original.channel.name} width="max-w-22" />,
     },
     {
       id: 'integrated',
@@ -99,7 +99,7 @@ export function submissionColumns(
       header: 'Nearest limit',
       cell: ({ row: { original: row } }) => (
         <span className={outcomeTone(row.verdict.outcome)}>
-          <Short text={row.verdict.nearestText} width="max-sm:whitespace-normal! sm:max-w-40" />
+          <Short text={row.verdict.nearestText} width="max-sm:whitespace-normal! sm:max-w-36" />
         </span>
       ),
     },
