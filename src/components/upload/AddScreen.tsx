@@ -8,6 +8,7 @@ import { Notice } from '@/components/look/Notice.tsx';
 import { deliverableListSchema, uploadListSchema, type Upload } from '@/domain/api/deliverables.ts';
 import { guessFromFileName } from '@/domain/file-name-guess.ts';
 import { ArrivingTable } from './ArrivingTable.tsx';
+import { ProgressBar } from './ProgressBar.tsx';
 import { UnfinishedUploads } from './UnfinishedUploads.tsx';
 import { progressText } from './upload-item.ts';
 import { useUploads } from './use-uploads.ts';
@@ -169,12 +170,7 @@ function Screen({ channels, programmes, unfinished }: Props) {
                   : 'Everything is sent.'}
               </p>
               {totals.bytesSent < totals.bytes && (
-                <progress
-                  className="h-1.5 w-full accent-teal"
-                  max={totals.bytes}
-                  value={totals.bytesSent}
-                  aria-label="All files, sent"
-                />
+                <ProgressBar done={totals.bytesSent} all={totals.bytes} label="All files, sent" />
               )}
             </div>
             <div className="flex flex-wrap gap-2">

@@ -2,6 +2,7 @@ import { outcomeTone, VerdictMark } from '@/components/look/VerdictMark.tsx';
 import type { DeliverableRow } from '@/domain/api/deliverables.ts';
 import { formatBytes, formatDuration } from '@/domain/figures-text.ts';
 import { contentKindNames } from '@/domain/vocabulary.ts';
+import { ProgressBar } from './ProgressBar.tsx';
 import { progressText, type UploadItem } from './upload-item.ts';
 
 interface Props {
@@ -100,12 +101,6 @@ export function ArrivingTable({ items, rowOf, picked, onPick, ...rest }: Props) 
   );
 }
 
-function Bar({ done, all, label }: { done: number; all: number; label: string }) {
-  return (
-    <progress className="h-1.5 w-full accent-teal" max={Math.max(1, all)} value={done} aria-label={label} />
-  );
-}
-
 const quiet = 'text-teal underline underline-offset-4';
 
 type StandingProps = Omit<Props, 'items' | 'rowOf' | 'picked' | 'onPick'> & {
@@ -172,7 +167,7 @@ function SendingCell({
           </button>
         )}
       </div>
-      <Bar done={bytesSent} all={byteSize} label={`${fileName}, sent`} />
+      <ProgressBar done={bytesSent} all={byteSize} label={`${fileName}, sent`} />
       {resumedBytes > 0 && state !== 'failed' && (
         <p className="text-muted">Goes on: {formatBytes(resumedBytes)} were there already.</p>
       )}
@@ -197,7 +192,11 @@ function MeasuringCell({ row, measuring }: { row: DeliverableRow; measuring: Pro
           {progress.secondsTotal && ` of ${formatDuration(progress.secondsTotal)}`}
         </span>
         {progress.secondsTotal && (
-          <Bar done={progress.secondsDone} all={progress.secondsTotal} label={`${row.fileName} measured`} />
+          <ProgressBar
+            done={progress.secondsDone}
+            all={progress.secondsTotal}
+            label={`${row.fileName} measured`}
+          />
         )}
       </div>
     );
