@@ -76,7 +76,8 @@ test('a spec owner publishes a version that changes a verdict, and nothing is me
   await addMaster(engineer, 'tallow_401_mixst_v1.wav', -23.4, 21);
   const report = await engineer
     .getByRole('row', { name: /tallow_401/ })
-    .getByRole('link', { name: /tallow_401/ })
+    .getByRole('link')
+    .first()
     .getAttribute('href');
   await engineer.goto(`${origin()}${report}`);
   const row = engineer
