@@ -117,5 +117,5 @@ export const versionFamily = (label: string): string =>
   label
     .toLowerCase()
     .replace(revisionWords, ' ')
-    .replace(/[\s_]+/g, ' ')
+    .replace(/[\s_,;]+/g, ' ')
     .trim();

@@ -151,5 +151,6 @@ describe('words', () => {
     ['M&E rev 3', 'm&e'],
     ['Version 2', ''],
     ['7.1.4', '7.1.4'],
+    ['Full mix stereo, v2', 'full mix stereo'],
   ])('reads %j as the family %j', (label, family) => expect(versionFamily(label)).toBe(family));
 });
