@@ -47,7 +47,9 @@ export const limitsRuleSchema = z
     /** Loudness range of under 60 s of programme is not judged (R 128 s1) unless the spec insists. */
     judgeShortProgrammes: z.boolean().default(false),
   })
-  .refine((r) => r.atLeast !== null || r.atMost !== null, { message: 'Give a lower limit, an upper limit, or both.' })
+  .refine((r) => r.atLeast !== null || r.atMost !== null, {
+    message: 'Give a lower limit, an upper limit, or both.',
+  })
   .refine((r) => r.atLeast === null || r.atMost === null || r.atLeast <= r.atMost, {
     message: 'The lower limit must not be above the upper one.',
   });
@@ -84,7 +86,14 @@ export const specBodySchema = z
     /** How a one-channel file is judged: as it is, or as it will be heard on two loudspeakers. */
     mono: z.enum(['asOne', 'asDual']).default('asOne'),
     /** The published document that the rules were taken from, if any. */
-    source: z.object({ document: z.string().min(1).max(200), edition: z.string().max(120), note: z.string().max(600).default('') }).nullable().default(null),
+    source: z
+      .object({
+        document: z.string().min(1).max(200),
+        edition: z.string().max(120),
+        note: z.string().max(600).default(''),
+      })
+      .nullable()
+      .default(null),
     rules: z.array(ruleSchema).min(1).max(40),
   })
   .refine((s) => new Set(s.rules.map((r) => r.id)).size === s.rules.length, {

@@ -30,7 +30,7 @@ export function whyNotUploadable(fileName: string, byteSize: number): string | n
   if (name === '') return 'The file has no name. Name it after the programme and try again.';
   if (name.length > 255)
     return `The file name has ${name.length} characters; 255 are the most. Shorten it and try again.`;
-   
+
   if (/[\u0000-\u001f\u007f\u202a-\u202e\u2066-\u2069]/.test(name))
     return 'The file name holds control characters that nobody can see. Rename the file and try again.';
   if (/[/\\]/.test(name)) return 'The file name holds a slash. Give the name alone, without folders.';

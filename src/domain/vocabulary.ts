@@ -23,7 +23,13 @@ export const roleNames: Record<Role, string> = {
   administrator: 'Administrator',
 };
 
-export const contentKinds = ['long_form', 'short_form', 'trailer', 'podcast_episode', 'music_programme'] as const;
+export const contentKinds = [
+  'long_form',
+  'short_form',
+  'trailer',
+  'podcast_episode',
+  'music_programme',
+] as const;
 export const contentKindSchema = z.enum(contentKinds);
 export type ContentKind = z.infer<typeof contentKindSchema>;
 export const contentKindNames: Record<ContentKind, string> = {

@@ -20,7 +20,11 @@ class BadInput extends Error {
 
 const badInput = (error: z.ZodError) => {
   const fields = Object.fromEntries(error.issues.map((issue) => [issue.path.join('.'), issue.message]));
-  return new BadInput({ code: 'bad_input', message: error.issues[0]?.message ?? 'This input does not fit.', fields });
+  return new BadInput({
+    code: 'bad_input',
+    message: error.issues[0]?.message ?? 'This input does not fit.',
+    fields,
+  });
 };
 
 /** The JSON body through its schema; anything else ends as 422 with the fields named. */
@@ -46,12 +50,15 @@ export function query<T extends z.ZodType>(context: APIContext, schema: T): z.in
 /** A path parameter that names a row; what is not a UUID names nothing. */
 export function idParam(context: APIContext, name = 'id'): string {
   const parsed = z.uuid().safeParse(context.params[name]);
-  if (!parsed.success) throw new BadInput({ code: 'not_found', message: 'There is nothing under this address.' });
+  if (!parsed.success)
+    throw new BadInput({ code: 'not_found', message: 'There is nothing under this address.' });
   return parsed.data;
 }
 
 /** Wraps an endpoint: answers become responses, surprises are logged whole and told as one sentence with a reference. */
-export function endpoint(handle: (context: APIContext, scope: MemberScope) => Promise<Answer<unknown> | Response>): APIRoute {
+export function endpoint(
+  handle: (context: APIContext, scope: MemberScope) => Promise<Answer<unknown> | Response>,
+): APIRoute {
   return async (context) => {
     const { scope } = context.locals;
     if (!scope) return refusalResponse({ code: 'unauthenticated', message: 'Sign in to go on.' });

@@ -25,14 +25,20 @@ export interface Refusal {
 export type Answer<T> = { ok: true; value: T } | { ok: false; refusal: Refusal };
 
 export const done = <T>(value: T): Answer<T> => ({ ok: true, value });
-export const refuse = (code: RefusalCode, message: string, fields?: Record<string, string>): Answer<never> => ({
+export const refuse = (
+  code: RefusalCode,
+  message: string,
+  fields?: Record<string, string>,
+): Answer<never> => ({
   ok: false,
   refusal: fields ? { code, message, fields } : { code, message },
 });
 
 /** A refusal when the scope lacks the permission, else `null`: `const no = lacking(scope, 'spec:edit'); if (no) return no;` */
 export const lacking = (scope: Scope, permission: Permission): Answer<never> | null =>
-  mayDo(scope, permission) ? null : refuse('forbidden', 'Your role in this organisation does not include this.');
+  mayDo(scope, permission)
+    ? null
+    : refuse('forbidden', 'Your role in this organisation does not include this.');
 
 /** Thrown inside a transaction to roll it back with an expected refusal; `inTransaction` turns it into an answer. */
 export class RefusedError extends Error {

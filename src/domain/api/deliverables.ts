@@ -1,5 +1,10 @@
 import { z } from 'zod';
-import { contentKindSchema, deliverableStateSchema, overallOutcomeSchema, submissionStateSchema } from '../vocabulary.ts';
+import {
+  contentKindSchema,
+  deliverableStateSchema,
+  overallOutcomeSchema,
+  submissionStateSchema,
+} from '../vocabulary.ts';
 import { excursionSchema, verdictBodySchema } from '../verdict.ts';
 import { specBodySchema } from '../spec.ts';
 import { idSchema, itemResultSchema, listOf, momentSchema, pageQuerySchema, personSchema } from './common.ts';
@@ -89,7 +94,14 @@ export const deliverableRowSchema = z.object({
 export type DeliverableRow = z.infer<typeof deliverableRowSchema>;
 export const deliverableListSchema = listOf(deliverableRowSchema);
 
-export const deliverableSorts = ['created', 'programme', 'integrated', 'truePeak', 'range', 'duration'] as const;
+export const deliverableSorts = [
+  'created',
+  'programme',
+  'integrated',
+  'truePeak',
+  'range',
+  'duration',
+] as const;
 export const deliverableQuerySchema = pageQuerySchema.extend({
   q: z.string().max(200).optional(),
   programme: z.string().max(200).optional(),
@@ -123,9 +135,14 @@ export const deliverableDetailsSchema = z.object({
 });
 export type DeliverableDetails = z.infer<typeof deliverableDetailsSchema>;
 export const patchDeliverablesSchema = z.object({
-  items: z.array(deliverableDetailsSchema.extend({ id: idSchema })).min(1).max(200),
+  items: z
+    .array(deliverableDetailsSchema.extend({ id: idSchema }))
+    .min(1)
+    .max(200),
 });
-export const patchDeliverablesResultSchema = z.object({ items: z.array(itemResultSchema(deliverableRowSchema)) });
+export const patchDeliverablesResultSchema = z.object({
+  items: z.array(itemResultSchema(deliverableRowSchema)),
+});
 
 /**
  * Loudness over time, one value per 100 ms (value i covers up to (i + 1) x 0.1 s); `null` where a window is not full or
@@ -181,8 +198,12 @@ export type Upload = z.infer<typeof uploadSchema>;
 /** `id` of each item is the file's place in the request, as a string. */
 export const createUploadsResultSchema = z.object({ items: z.array(itemResultSchema(uploadSchema)) });
 export const uploadListSchema = z.object({ items: z.array(uploadSchema) });
-export const signPartsSchema = z.object({ numbers: z.array(z.number().int().min(1).max(10_000)).min(1).max(100) });
-export const signPartsResultSchema = z.object({ items: z.array(z.object({ number: z.number().int(), url: z.string() })) });
+export const signPartsSchema = z.object({
+  numbers: z.array(z.number().int().min(1).max(10_000)).min(1).max(100),
+});
+export const signPartsResultSchema = z.object({
+  items: z.array(z.object({ number: z.number().int(), url: z.string() })),
+});
 export const recordPartSchema = z.object({
   number: z.number().int().min(1).max(10_000),
   etag: z.string().min(1).max(200),

@@ -1,12 +1,23 @@
 import { z } from 'zod';
 import { roleSchema } from '../vocabulary.ts';
-import { idSchema, listOf, momentSchema, organisationRefSchema, pageQuerySchema, personSchema } from './common.ts';
+import {
+  idSchema,
+  listOf,
+  momentSchema,
+  organisationRefSchema,
+  pageQuerySchema,
+  personSchema,
+} from './common.ts';
 
 export const meSchema = z.object({
   id: idSchema,
   name: z.string(),
   email: z.string(),
-  organisation: organisationRefSchema.extend({ isSupplier: z.boolean(), isDistributor: z.boolean(), timeZone: z.string() }),
+  organisation: organisationRefSchema.extend({
+    isSupplier: z.boolean(),
+    isDistributor: z.boolean(),
+    timeZone: z.string(),
+  }),
   roles: z.array(roleSchema),
   organisations: z.array(organisationRefSchema),
 });
@@ -22,8 +33,16 @@ export const memberSchema = z.object({
   lastSeenAt: momentSchema.nullable(),
   openSessions: z.number().int(),
 });
-export const invitationSchema = z.object({ id: idSchema, email: z.string(), roles: z.array(roleSchema), expiresAt: momentSchema });
-export const memberListSchema = z.object({ items: z.array(memberSchema), invitations: z.array(invitationSchema) });
+export const invitationSchema = z.object({
+  id: idSchema,
+  email: z.string(),
+  roles: z.array(roleSchema),
+  expiresAt: momentSchema,
+});
+export const memberListSchema = z.object({
+  items: z.array(memberSchema),
+  invitations: z.array(invitationSchema),
+});
 export const inviteSchema = z.object({
   email: z.email('This is not an e-mail address.').trim().toLowerCase(),
   roles: z.array(roleSchema).min(1, 'Choose at least one role.'),

@@ -3,7 +3,15 @@ import { contentKindSchema, overallOutcomeSchema, submissionStateSchema } from '
 import { specBodySchema } from '../spec.ts';
 import { verdictBodySchema } from '../verdict.ts';
 import { figuresSchema, formatSchema, measurementSchema } from './deliverables.ts';
-import { idSchema, itemResultSchema, listOf, momentSchema, organisationRefSchema, pageQuerySchema, personSchema } from './common.ts';
+import {
+  idSchema,
+  itemResultSchema,
+  listOf,
+  momentSchema,
+  organisationRefSchema,
+  pageQuerySchema,
+  personSchema,
+} from './common.ts';
 
 export const submissionRowSchema = z.object({
   id: idSchema,
@@ -61,24 +69,50 @@ export const submissionReportSchema = submissionRowSchema.extend({
   specBody: specBodySchema,
   specVersionId: idSchema,
   /** Verdict under the version now in force, where that is another one. */
-  underNewer: z.object({ specVersionNumber: z.number().int(), outcome: overallOutcomeSchema, nearestText: z.string() }).nullable(),
+  underNewer: z
+    .object({ specVersionNumber: z.number().int(), outcome: overallOutcomeSchema, nearestText: z.string() })
+    .nullable(),
   notes: z.array(
-    z.object({ id: idSchema, author: personSchema, organisationName: z.string(), atSeconds: z.number().nullable(), text: z.string(), createdAt: momentSchema }),
+    z.object({
+      id: idSchema,
+      author: personSchema,
+      organisationName: z.string(),
+      atSeconds: z.number().nullable(),
+      text: z.string(),
+      createdAt: momentSchema,
+    }),
   ),
-  waivers: z.array(z.object({ ruleId: z.string(), reason: z.string(), waivedBy: personSchema, createdAt: momentSchema })),
+  waivers: z.array(
+    z.object({ ruleId: z.string(), reason: z.string(), waivedBy: personSchema, createdAt: momentSchema }),
+  ),
   /** The submission that this one replaces, with its figures, for the change figure by figure. */
-  replaces: z.object({ id: idSchema, submittedAt: momentSchema, figures: figuresSchema, outcome: overallOutcomeSchema }).nullable(),
+  replaces: z
+    .object({
+      id: idSchema,
+      submittedAt: momentSchema,
+      figures: figuresSchema,
+      outcome: overallOutcomeSchema,
+    })
+    .nullable(),
 });
 export type SubmissionReport = z.infer<typeof submissionReportSchema>;
 
 export const createSubmissionsSchema = z.object({
   items: z
-    .array(z.object({ deliverableId: idSchema, channelId: idSchema, airAt: momentSchema.nullable().default(null) }))
+    .array(
+      z.object({
+        deliverableId: idSchema,
+        channelId: idSchema,
+        airAt: momentSchema.nullable().default(null),
+      }),
+    )
     .min(1)
     .max(200),
 });
 /** `id` of each item is '<deliverableId>/<channelId>'. */
-export const createSubmissionsResultSchema = z.object({ items: z.array(itemResultSchema(submissionRowSchema)) });
+export const createSubmissionsResultSchema = z.object({
+  items: z.array(itemResultSchema(submissionRowSchema)),
+});
 export const patchSubmissionSchema = z.object({ airAt: momentSchema.nullable() });
 
 export const decisionSchema = z.discriminatedUnion('decision', [
@@ -94,10 +128,21 @@ export const decisionSchema = z.discriminatedUnion('decision', [
     id: idSchema,
     version: z.number().int(),
     decision: z.literal('approve_with_waiver'),
-    waivers: z.array(z.object({ ruleId: z.string(), reason: z.string().trim().min(1, 'Say why this rule is waived.').max(2000) })).min(1).max(40),
+    waivers: z
+      .array(
+        z.object({
+          ruleId: z.string(),
+          reason: z.string().trim().min(1, 'Say why this rule is waived.').max(2000),
+        }),
+      )
+      .min(1)
+      .max(40),
   }),
 ]);
 export const decisionsSchema = z.object({ items: z.array(decisionSchema).min(1).max(200) });
 export const decisionsResultSchema = z.object({ items: z.array(itemResultSchema(submissionRowSchema)) });
-export const noteSchema = z.object({ text: z.string().trim().min(1).max(4000), atSeconds: z.number().min(0).nullable().default(null) });
+export const noteSchema = z.object({
+  text: z.string().trim().min(1).max(4000),
+  atSeconds: z.number().min(0).nullable().default(null),
+});
 export const presenceSchema = z.object({ openBy: z.array(personSchema) });
