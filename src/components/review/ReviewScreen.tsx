@@ -226,7 +226,7 @@ function Screen({ initial, search, channels, suppliers, isQueue, mayDecide, ownU
           </Notice>
         </div>
       )}
-      <div className="grid grid-cols-[minmax(0,1fr)] gap-5 lg:grid-cols-[minmax(0,1fr)_352px]">
+      <div className="grid grid-cols-[minmax(0,1fr)] gap-5 lg:grid-cols-[minmax(0,1fr)_320px]">
         <div className="overflow-x-auto text-[13px] [&_td]:px-1.5! [&_th]:px-1.5!">
           <DataTable
             label={isQueue ? 'Review queue' : 'Submissions'}

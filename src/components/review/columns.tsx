@@ -99,7 +99,7 @@ export function submissionColumns(
       header: 'Nearest limit',
       cell: ({ row: { original: row } }) => (
         <span className={outcomeTone(row.verdict.outcome)}>
-          <Short text={row.verdict.nearestText} width="max-sm:whitespace-normal! sm:max-w-36" />
+          <Short text={row.verdict.nearestText} width="max-sm:whitespace-normal! sm:max-w-44" />
         </span>
       ),
     },
