@@ -27,8 +27,9 @@ export const taps = 12;
 /** The interpolated points of a convolution lie between the samples 6 and 5 before its newest: they count for the earlier. */
 export const delaySamples = 6;
 
-/** The phases that make a grid of at least 176.4 kHz: all four below 88.2 kHz, two below 176.4 kHz, none above. */
-export function phasesFor(sampleRateHz: number): readonly Float64Array[] {
-  if (sampleRateHz < 88_200) return phases;
-  return sampleRateHz < 176_400 ? [phases[0], phases[2]] : [];
-}
+/**
+ * The phases that make a grid of at least 176.4 kHz: all four below 88.2 kHz, two from there on. Two also at 176.4 kHz and
+ * above, where the samples alone would do for sound under 20 kHz but miss EBU Tech 3341's signals, which scale with the rate.
+ */
+export const phasesFor = (sampleRateHz: number): readonly Float64Array[] =>
+  sampleRateHz < 88_200 ? phases : [phases[0], phases[2]];

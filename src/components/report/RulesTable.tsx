@@ -50,7 +50,7 @@ export function RulesTable({ verdict }: { verdict: VerdictBody }) {
             <td className="w-48 max-md:text-right">{rule.name}</td>
             <td className="n w-40 max-md:text-left!">
               <span className="num text-[17px] font-semibold">{rule.judgedText}</span>
-              {rule.judged !== null && rule.unit && <span className="unit">{rule.unit}</span>}
+              {rule.judged !== null && rule.unit !== 's' && <span className="unit">{rule.unit}</span>}
             </td>
             <td className="py-2! max-md:order-last max-md:col-span-2 md:w-[430px]">
               {hasLine(rule) && (

@@ -45,7 +45,7 @@ export class PcmSource implements SampleSource {
       const bytes = await this.bytes.read(dataOffset + frame * frameBytes, wanted * frameBytes);
       const count = Math.floor(bytes.length / frameBytes);
       if (count === 0) throw new Error('The file became shorter while it was read.');
-      wild.add(deinterleave(bytes, count, encoding, planar), frame);
+      deinterleave(bytes, count, encoding, planar, wild.from(frame));
       yield { planar, count };
       frame += count;
     }
@@ -56,12 +56,15 @@ export class PcmSource implements SampleSource {
 /** Counts samples that are not numbers, and tells them once. */
 export class WildSamples {
   #count = 0;
-  #firstFrame = 0;
+  #firstFrame = Infinity;
   constructor(private readonly sampleRateHz: number) {}
 
-  add(count: number, frame: number): void {
-    if (count > 0 && this.#count === 0) this.#firstFrame = frame;
-    this.#count += count;
+  /** Takes the wild samples of a block that begins at this frame. */
+  from(blockFrame: number): (frame: number) => void {
+    return (frame) => {
+      this.#count++;
+      this.#firstFrame = Math.min(this.#firstFrame, blockFrame + frame);
+    };
   }
 
   tell(findings: Finding[]): void {

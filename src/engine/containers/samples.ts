@@ -29,17 +29,17 @@ export function sampleReader({
   }
 }
 
-/** Fills the planar arrays with `frames` frames; returns how many samples were not finite and became silence. */
+/** Fills the planar arrays with `frames` frames. A sample that is not finite becomes silence, and its frame is told. */
 export function deinterleave(
   bytes: Uint8Array,
   frames: number,
   encoding: Encoding,
   planar: Float64Array[],
-): number {
+  onWild: (frame: number) => void,
+): void {
   const view = new DataView(bytes.buffer, bytes.byteOffset, bytes.byteLength);
   const read = sampleReader(encoding);
   const stride = planar.length * encoding.bytes;
-  let wild = 0;
   for (let c = 0; c < planar.length; c++) {
     const out = planar[c];
     for (let i = 0, o = c * encoding.bytes; i < frames; i++, o += stride) {
@@ -47,9 +47,8 @@ export function deinterleave(
       if (Number.isFinite(x)) out[i] = x;
       else {
         out[i] = 0;
-        wild++;
+        onWild(i);
       }
     }
   }
-  return wild;
 }

@@ -84,7 +84,7 @@ export class DecodedSource implements SampleSource {
         if (count === 0) continue;
         if ((planar[0]?.length ?? 0) < count)
           planar = Array.from({ length: format.channels }, () => new Float64Array(count));
-        wild.add(deinterleave(bytes, count, encoding, planar), frames);
+        deinterleave(bytes, count, encoding, planar, wild.from(frames));
         frames += count;
         yield { planar, count };
       }
