@@ -29,6 +29,7 @@ export default defineConfig(
       'node_modules/**',
       '.data/**',
       'src/engine/kernel/assembly/**',
+      'src/engine/kernel/binary.ts',
       'test-results/**',
       'public/**',
     ],

@@ -10,7 +10,7 @@ interface Line {
 
 async function measureOne(file: string): Promise<Line> {
   try {
-    const { measurement } = await measureFile(file);
+    const [{ measurement }] = await measureFile(file);
     return { file, measurement, error: null };
   } catch (error) {
     if (error instanceof UnreadableError)

@@ -52,7 +52,12 @@ export interface Loudness {
 
 export interface Figures {
   loudness: Loudness;
-  truePeak: { maxDbtp: number | null; perChannelDbtp: (number | null)[] };
+  truePeak: {
+    maxDbtp: number | null;
+    perChannelDbtp: (number | null)[];
+    /** Where each audio channel's stands. */
+    perChannelAtSeconds?: (number | null)[];
+  };
   samplePeak: { maxDbfs: number | null; perChannelDbfs: (number | null)[] };
   /** Where the maxima stand, seconds from the start: the window's centre is not used, its end is. */
   times: {
@@ -62,6 +67,10 @@ export interface Figures {
   };
   /** Seconds of programme that were measured. */
   measuredSeconds: number;
+  /** Where they begin in the file; times are counted from there. */
+  windowStartSeconds?: number;
+  /** 5.1 heard in stereo (ITU-R BS.775-4, Annex 4, Table 2); only where the presentation has surrounds. */
+  downmix?: { integratedLufs: number | null; truePeakDbtp: number | null };
 }
 
 /** One measurement of one presentation. */
@@ -85,4 +94,4 @@ export interface MeasurementSeries {
 }
 
 /** Name of the engine that made a measurement; changes whenever any figure could. */
-export const engineVersion = '1.0.0';
+export const engineVersion = '2.0.0';

@@ -64,3 +64,17 @@ export function responseDb(stages: readonly Biquad[], hz: number, sampleRateHz: 
   }
   return db;
 }
+
+/** Both stages with the first factor of each numerator taken out; `energyScale` puts it back where energies are summed. */
+export function scaledWeighting(sampleRateHz: number) {
+  const [shelf, highPass] = kWeighting(sampleRateHz);
+  return {
+    p1: shelf.b1 / shelf.b0,
+    p2: shelf.b2 / shelf.b0,
+    a1: shelf.a1,
+    a2: shelf.a2,
+    c1: highPass.a1,
+    c2: highPass.a2,
+    energyScale: (shelf.b0 * highPass.b0) ** 2,
+  };
+}

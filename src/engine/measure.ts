@@ -1,33 +1,81 @@
-/** One whole measurement: a source of samples in, figures, findings and series out. */
+/** One whole measurement: a source of frames in; figures, findings and series of each presentation out. */
 import type { Measurement, MeasurementSeries } from './figures.ts';
-import { weightsOf } from './layouts.ts';
-import { Meter } from './meter.ts';
+import { Meter, type Twin } from './meter.ts';
+import { wholeFile, wholeLayout, type MeasuringPlan, type Presentation } from './plan.ts';
 import { UnreadableError, type SampleSource } from './source.ts';
 
 export interface MeasureOptions {
+  plan?: MeasuringPlan;
   /** Seconds of programme measured, and in all (`null`: not known). Called once per block. */
   onProgress?: (secondsDone: number, secondsTotal: number | null) => void;
   signal?: AbortSignal;
+  twin?: Twin;
 }
 
-/** Measures from the first sample to the last. Throws UnreadableError, the source's errors, or the signal's reason. */
+export interface Measured {
+  presentation: Presentation;
+  measurement: Measurement;
+  series: MeasurementSeries;
+}
+
+/** Measures every presentation of the plan in one pass. Throws UnreadableError, the source's errors, or the signal's reason. */
 export async function measure(
   source: SampleSource,
-  { onProgress, signal = new AbortController().signal }: MeasureOptions = {},
-): Promise<{ measurement: Measurement; series: MeasurementSeries }> {
-  const meter = new Meter({ sampleRateHz: source.format.sampleRateHz, weights: weightsOf(source.layout) });
-  for await (const { planar, count } of source.blocks(signal)) {
-    meter.process(planar, count);
-    onProgress?.(meter.samples / source.format.sampleRateHz, source.secondsTotal);
-  }
-  if (meter.samples === 0) throw new UnreadableError('no-samples', 'The file holds not one sample of audio.');
-  const { figures, series } = meter.result();
-  return {
-    measurement: {
-      format: { ...source.format, durationSeconds: figures.measuredSeconds },
-      figures,
-      findings: source.findings,
-    },
-    series,
+  {
+    plan = wholeFile,
+    onProgress,
+    signal = new AbortController().signal,
+    twin = 'kernel',
+  }: MeasureOptions = {},
+): Promise<Measured[]> {
+  const { format } = source;
+  const rate = format.sampleRateHz;
+  const start = plan.window?.startSeconds ?? 0;
+  const end = plan.window?.endSeconds ?? null;
+  const window = {
+    startFrame: Math.round(start * rate),
+    endFrame: end === null ? null : Math.round(end * rate),
   };
+  const last = end ?? source.secondsTotal;
+  const secondsTotal =
+    last === null ? null : Math.max(0, Math.min(last, source.secondsTotal ?? last) - start);
+  const parts = (plan.presentations ?? [wholeLayout(source.layout)]).map((presentation) => ({
+    presentation,
+    meter: new Meter(
+      {
+        sampleRateHz: rate,
+        encoding: source.encoding,
+        frameChannels: format.channels,
+        audioChannels: presentation.audioChannels,
+        speakers: presentation.speakers,
+        secondsTotal,
+      },
+      twin,
+    ),
+  }));
+  let done = 0;
+  for await (const { bytes, frames } of source.blocks(signal, window)) {
+    for (const { meter } of parts) meter.process(bytes, frames);
+    done += frames;
+    onProgress?.(done / rate, secondsTotal);
+  }
+  if (done === 0)
+    throw new UnreadableError(
+      'no-samples',
+      plan.window
+        ? 'The measured window holds not one sample of audio: it begins behind the end of the file.'
+        : 'The file holds not one sample of audio.',
+    );
+  return parts.map(({ presentation, meter }) => {
+    const { figures, series, findings } = meter.result();
+    return {
+      presentation,
+      measurement: {
+        format: { ...format, durationSeconds: plan.window ? (source.secondsTotal ?? 0) : done / rate },
+        figures: { ...figures, windowStartSeconds: start },
+        findings: [...source.findings, ...findings],
+      },
+      series,
+    };
+  });
 }

@@ -1,8 +1,9 @@
 /**
- * The streaming core: planar samples in, figures out. No allocation per block, and any split of the input gives the same
- * figures to the last bit, since every sum runs over samples one by one.
+ * The streaming meter of one presentation: frames in, figures out. The per-sample work is a core's; here its steps are
+ * gathered and turned into figures. Any split of the input gives the same figures to the last bit.
  */
-import type { Figures, MeasurementSeries } from './figures.ts';
+import type { Encoding } from './containers/samples.ts';
+import type { Figures, Finding, MeasurementSeries } from './figures.ts';
 import {
   integrated,
   loudnessRange,
@@ -11,85 +12,113 @@ import {
   slidingMaximum,
   stepsPerSecond,
 } from './gating.ts';
-import { kWeighting } from './k-weighting.ts';
-import { delaySamples, phasesFor, taps } from './true-peak.ts';
+import { doubles, floats, GrowingFloats } from './growing-floats.ts';
+import { interpolatorFor } from './interpolator.ts';
+import type { Core, CoreOptions, CoreSink, CoreStep, CoreTotals } from './kernel/core.ts';
+import { KernelCore } from './kernel/kernel-core.ts';
+import { ScalarCore } from './kernel/scalar-core.ts';
+import { weightOf, type Speaker } from './layouts.ts';
+import type { Run, StepObserver } from './steps.ts';
 
 export interface MeterOptions {
   sampleRateHz: number;
-  /** One weight of BS.1770-5 per audio channel; 0 for LFE. */
-  weights: readonly number[];
-  /** False leaves the interpolator out: true peaks are then the sample peaks, and only loudness is to be used. */
-  interpolate?: boolean;
+  /** Of the interleaved frames that come in, and how many audio channels one has. */
+  encoding: Encoding;
+  frameChannels: number;
+  /** Audio channels of a frame that are measured, and the loudspeaker of each. */
+  audioChannels: readonly number[];
+  speakers: readonly Speaker[];
+  /** Seconds that are expected, so that the series need not grow. */
+  secondsTotal?: number | null;
+  /** Sees every step, run and sample. */
+  observers?: readonly StepObserver[];
 }
 
-/** One audio channel's state; the arrays are its growing series of steps. */
-interface Lane {
-  /** Filter memory: shelf x1 x2 y1 y2, then high-pass y1 y2 (its input is the shelf's output). */
-  state: Float64Array;
-  /** The last samples, newest last, so that the interpolator sees across blocks. */
-  history: Float64Array;
-  energies: GrowingFloats;
-  energySum: number;
-  samplePeak: number;
-  truePeak: number;
-  truePeakAt: number;
+export interface MeterResult {
+  figures: Figures;
+  series: MeasurementSeries;
+  findings: Finding[];
+  /** All integer samples or-ed, left-justified in 32 bits; 0 for float. */
+  usedBits: number;
+  /** Mean of each audio channel, full scale 1.0. */
+  means: number[];
 }
 
-/** Samples that the interpolator takes at a time, behind the history of the ones before. */
-const chunkSamples = 4096;
-
-class GrowingFloats {
-  values = new Float64Array(1 << 12);
-  length = 0;
-  /** Opens steps up to and including `index`. */
-  reach(index: number): void {
-    if (index < this.length) return;
-    if (index >= this.values.length) {
-      const bigger = new Float64Array(Math.max(index + 1, this.values.length * 2));
-      bigger.set(this.values.subarray(0, this.length));
-      this.values = bigger;
-    }
-    this.length = index + 1;
-  }
-  view(): Float64Array {
-    return this.values.subarray(0, this.length);
-  }
-}
+/** The kernel, or its plain twin, which gives the same and serves as oracle. */
+export type Twin = 'kernel' | 'scalar';
 
 const decibels = (linear: number): number | null => (linear > 0 ? 20 * Math.log10(linear) : null);
 
-/** Measures one presentation. `process` blocks of any length, then `result`; `reset` begins anew. */
+/** Loudspeakers that go to the left of a stereo downmix, to the right, or to both (ITU-R BS.775-4, Annex 4, Table 2). */
+const half = Math.SQRT1_2;
+const downmixFactors: Partial<Record<Speaker, readonly [left: number, right: number]>> = {
+  L: [1, 0],
+  R: [0, 1],
+  C: [half, half],
+  Ls: [half, 0],
+  Rs: [0, half],
+  LFE: [0, 0],
+};
+const downmixed = (speakers: readonly Speaker[]) =>
+  speakers.includes('Ls') && speakers.includes('Rs') && speakers.every((s) => downmixFactors[s]);
+
+/** Measures one presentation. `process` frames in blocks of any length, then `result` once. */
 export class Meter {
   readonly #options: MeterOptions;
-  readonly #stepSamples: number;
-  readonly #phases: readonly Float64Array[];
-  readonly #shelf;
-  readonly #highPass;
-  readonly #work = new Float64Array(taps - 1 + chunkSamples);
-  #lanes: Lane[] = [];
-  #peaks = new GrowingFloats();
+  readonly #core: Core;
+  /** Lane of the core for each audio channel of the presentation: left and right come first. */
+  readonly #lanes: readonly number[];
+  readonly #weights: readonly number[];
+  readonly #energies: GrowingFloats<Float64Array>;
+  readonly #downmix: GrowingFloats<Float64Array> | null;
+  readonly #peaks: GrowingFloats<Float32Array>;
+  readonly #channelEnergies: GrowingFloats<Float32Array>;
+  readonly #hundredth: Float64Array;
+  readonly #planar: Float32Array[] = [];
+  readonly #step;
+  /** Runs at the largest value of each audio channel so far. */
+  readonly #flatTops = new Map<number, { value: number; runs: Run[] }>();
   #samples = 0;
 
-  constructor(options: MeterOptions) {
+  constructor(options: MeterOptions, twin: Twin = 'kernel') {
     this.#options = options;
-    this.#stepSamples = options.sampleRateHz / stepsPerSecond;
-    this.#phases = options.interpolate === false ? [] : phasesFor(options.sampleRateHz);
-    [this.#shelf, this.#highPass] = kWeighting(options.sampleRateHz);
-    this.reset();
-  }
-
-  reset(): void {
-    this.#samples = 0;
-    this.#peaks = new GrowingFloats();
-    this.#lanes = this.#options.weights.map(() => ({
-      state: new Float64Array(6),
-      history: new Float64Array(taps - 1),
-      energies: new GrowingFloats(),
-      energySum: 0,
-      samplePeak: 0,
-      truePeak: 0,
-      truePeakAt: 0,
-    }));
+    const { speakers, sampleRateHz } = options;
+    const channels = options.audioChannels.length;
+    const [left, right] = [speakers.indexOf('L'), speakers.indexOf('R')];
+    const pair = left >= 0 && right >= 0;
+    const rest = speakers.map((_, i) => i).filter((i) => !pair || (i !== left && i !== right));
+    const order = pair ? [left, right, ...rest] : rest;
+    this.#lanes = speakers.map((_, i) => order.indexOf(i));
+    this.#weights = speakers.map(weightOf);
+    const factors = order.map((i) => downmixFactors[speakers[i]] ?? ([0, 0] as const));
+    const coreOptions: CoreOptions = {
+      sampleRateHz,
+      encoding: options.encoding,
+      frameChannels: options.frameChannels,
+      audioChannels: order.map((i) => options.audioChannels[i]),
+      pair,
+      downmix: downmixed(speakers) ? [factors.map(([l]) => l), factors.map(([, r]) => r)] : null,
+      interpolator: interpolatorFor(sampleRateHz),
+    };
+    const sink: CoreSink = {
+      step: (step) => this.#takeStep(step),
+      run: (run, value) => this.#takeRun(run, value),
+      samples: (planar, count, first) => this.#takeSamples(planar, count, first),
+    };
+    this.#core = twin === 'kernel' ? new KernelCore(coreOptions, sink) : new ScalarCore(coreOptions, sink);
+    const steps = Math.ceil((options.secondsTotal ?? 0) * stepsPerSecond) + 1;
+    this.#energies = new GrowingFloats(doubles, steps);
+    this.#downmix = coreOptions.downmix && new GrowingFloats(doubles, steps);
+    this.#peaks = new GrowingFloats(floats, steps);
+    this.#channelEnergies = new GrowingFloats(floats, Math.ceil(steps / 10) * channels);
+    this.#hundredth = new Float64Array(channels);
+    this.#step = {
+      index: 0,
+      weighted: new Float64Array(channels),
+      energy: new Float64Array(channels),
+      peak: new Float64Array(channels),
+      leftRight: 0,
+    };
   }
 
   /** Samples of programme taken in so far, per audio channel. */
@@ -97,193 +126,133 @@ export class Meter {
     return this.#samples;
   }
 
-  /** Takes the first `count` samples of each audio channel; full scale is 1.0 and every sample finite. */
-  process(planar: readonly Float64Array[], count: number): void {
-    for (let c = 0; c < this.#lanes.length; c++) {
-      this.#weigh(this.#lanes[c], planar[c], count);
-      this.#interpolate(this.#lanes[c], planar[c], count, this.#samples);
+  /** Takes whole interleaved frames. */
+  process(bytes: Uint8Array, frames: number): void {
+    this.#core.process(bytes, frames);
+    this.#samples += frames;
+  }
+
+  #takeStep(step: CoreStep): void {
+    const mine = this.#step;
+    let weighted = 0;
+    for (let i = 0; i < this.#lanes.length; i++) {
+      const lane = this.#lanes[i];
+      mine.weighted[i] = step.weighted[lane];
+      mine.energy[i] = step.energy[lane];
+      mine.peak[i] = step.peak[lane];
+      if (this.#weights[i] !== 0) weighted += this.#weights[i] * step.weighted[lane];
+      this.#hundredth[i] += step.weighted[lane];
     }
-    this.#samples += count;
-  }
-
-  /** First sample of a step: rounded multiples, so that a rate of 22.05 kHz gathers no error. */
-  #boundary(step: number): number {
-    return Math.round(step * this.#stepSamples);
-  }
-
-  #stepOf(sample: number): number {
-    let step = Math.floor(sample / this.#stepSamples);
-    if (this.#boundary(step + 1) <= sample) step++;
-    else if (this.#boundary(step) > sample) step--;
-    return step;
-  }
-
-  /** K-weighting and the energy of each full step of 10 ms. */
-  #weigh(lane: Lane, samples: Float64Array, count: number): void {
-    const { b0, b1, b2, a1, a2 } = this.#shelf;
-    const { b0: g, a1: c1, a2: c2 } = this.#highPass;
-    const { state } = lane;
-    let [x1, x2, y1, y2, z1, z2] = state;
-    let sum = lane.energySum;
-    let step = lane.energies.length;
-    let end = this.#boundary(step + 1) - this.#samples;
-    let peak = lane.samplePeak;
-    for (let i = 0; i < count; i++) {
-      const x = samples[i];
-      const y = b0 * x + b1 * x1 + b2 * x2 - a1 * y1 - a2 * y2;
-      const z = g * (y - 2 * y1 + y2) - c1 * z1 - c2 * z2;
-      x2 = x1;
-      x1 = x;
-      y2 = y1;
-      y1 = y;
-      z2 = z1;
-      z1 = z;
-      sum += z * z;
-      const magnitude = x < 0 ? -x : x;
-      if (magnitude > peak) peak = magnitude;
-      if (i + 1 === end) {
-        lane.energies.reach(step);
-        lane.energies.values[step] = sum / this.#stepSamples;
-        sum = 0;
-        step++;
-        end = this.#boundary(step + 1) - this.#samples;
-      }
+    mine.index = step.index;
+    mine.leftRight = step.leftRight;
+    this.#energies.push(weighted);
+    this.#peaks.push(step.truePeak);
+    const lanes = this.#lanes.length;
+    this.#downmix?.push(step.weighted[lanes] + step.weighted[lanes + 1]);
+    if (step.index % 10 === 9) {
+      for (let i = 0; i < lanes; i++) this.#channelEnergies.push(this.#hundredth[i] / 10);
+      this.#hundredth.fill(0);
     }
-    state[0] = x1;
-    state[1] = x2;
-    state[2] = y1;
-    state[3] = y2;
-    state[4] = z1;
-    state[5] = z2;
-    lane.energySum = sum;
-    lane.samplePeak = peak;
+    for (const observer of this.#options.observers ?? []) observer.step(mine);
   }
 
-  /**
-   * The largest of each sample and the points interpolated behind it, into the series and the lane's maximum. `at` is the
-   * place of the first sample; what belongs before the programme's start counts for its first sample.
-   */
-  #interpolate(lane: Lane, samples: Float64Array, count: number, at: number, flushing = false): void {
-    const last = flushing ? this.#samples - 1 : Infinity;
-    const work = this.#work;
-    const keep = taps - 1;
-    for (let done = 0; done < count; done += chunkSamples) {
-      const length = Math.min(chunkSamples, count - done);
-      work.set(lane.history);
-      work.set(samples.subarray(done, done + length), keep);
-      this.#interpolateChunk(lane, length, at + done, last);
-      lane.history.set(work.subarray(length, length + keep));
-    }
+  #takeRun(run: Run, value: number): void {
+    const mine = { ...run, audioChannel: this.#lanes.indexOf(run.audioChannel) };
+    if (run.kind !== 'flat-top') return this.#tell(mine);
+    const known = this.#flatTops.get(mine.audioChannel);
+    if (!known || value > known.value) this.#flatTops.set(mine.audioChannel, { value, runs: [mine] });
+    else if (value === known.value && known.runs.length < mostFlatTops) known.runs.push(mine);
   }
 
-  #interpolateChunk(lane: Lane, length: number, at: number, last: number): void {
-    const work = this.#work;
-    let step = this.#stepOf(Math.max(0, at - delaySamples));
-    let stepEnd = this.#boundary(step + 1);
-    this.#peaks.reach(step);
-    let stepPeak = this.#peaks.values[step];
-    for (let i = 0; i < length; i++) {
-      const place = Math.min(Math.max(0, at + i - delaySamples), last);
-      if (place >= stepEnd) {
-        this.#peaks.values[step] = stepPeak;
-        step++;
-        stepEnd = this.#boundary(step + 1);
-        this.#peaks.reach(step);
-        stepPeak = this.#peaks.values[step];
-      }
-      const newest = i + taps - 1;
-      // The sample that the points stand behind: the interpolator itself passes no sample through.
-      let largest = Math.abs(work[newest - delaySamples]);
-      for (const phase of this.#phases) {
-        let sum = 0;
-        for (let k = 0; k < taps; k++) sum += phase[k] * work[newest - k];
-        const magnitude = sum < 0 ? -sum : sum;
-        if (magnitude > largest) largest = magnitude;
-      }
-      if (largest > stepPeak) stepPeak = largest;
-      if (largest > lane.truePeak) {
-        lane.truePeak = largest;
-        lane.truePeakAt = place;
-      }
-    }
-    this.#peaks.values[step] = stepPeak;
+  #tell(run: Run): void {
+    for (const observer of this.#options.observers ?? []) observer.run(run);
   }
 
-  /** Figures and series of all that was processed. Ends the measurement: `reset` before the next. */
-  result(): { figures: Figures; series: MeasurementSeries } {
-    const silence = new Float64Array(taps - 1);
-    if (this.#samples > 0)
-      for (const lane of this.#lanes) this.#interpolate(lane, silence, silence.length, this.#samples, true);
-    const energies = this.#weightedEnergies();
-    const { weights } = this.#options;
+  #takeSamples(planar: readonly Float32Array[], count: number, first: number): void {
+    const { observers = [] } = this.#options;
+    if (observers.length === 0) return;
+    this.#lanes.forEach((lane, i) => (this.#planar[i] = planar[lane]));
+    for (const observer of observers) observer.samples(this.#planar, count, first);
+  }
+
+  /** Figures and series of all that was processed; ends the measurement. */
+  result(): MeterResult {
+    const totals = this.#core.finish();
+    // A sample that float32 rounds down, where the interpolator works, is still the peak that it is.
+    const perChannel = this.#lanes.map((lane) => {
+      const own = totals.lanes[lane];
+      return { ...own, truePeak: Math.max(own.truePeak, own.samplePeak) };
+    });
+    for (const [audioChannel, { value, runs }] of this.#flatTops)
+      if (value === perChannel[audioChannel].samplePeak) runs.forEach((run) => this.#tell(run));
+    if (totals.tailTruePeak !== null) this.#peaks.push(totals.tailTruePeak);
+    return {
+      figures: this.#figures(totals, perChannel),
+      series: {
+        stepSeconds: 0.01,
+        energy: this.#energies.view(),
+        truePeak: this.#peaks.view(),
+        channelCount: this.#lanes.length,
+        channelEnergy: this.#channelEnergies.view(),
+      },
+      findings: this.#wild(totals),
+      usedBits: totals.usedBits,
+      means: perChannel.map(({ sum }) => (totals.samples === 0 ? 0 : sum / totals.samples)),
+    };
+  }
+
+  #figures({ samples, lanes }: CoreTotals, perChannel: CoreTotals['lanes']): Figures {
+    const rate = this.#options.sampleRateHz;
+    const energies = this.#energies.view();
     const momentary = slidingMaximum(energies, momentarySeconds);
     const shortTerm = slidingMaximum(energies, shortTermSeconds);
-    const loudest = this.#lanes.reduce<Lane | null>(
-      (best, lane) => (best && best.truePeak >= lane.truePeak ? best : lane),
-      null,
-    );
-    const truePeak = loudest?.truePeak ?? 0;
-    const rate = this.#options.sampleRateHz;
-    const figures: Figures = {
+    const loudest = perChannel.reduce((best, lane) => (best.truePeak >= lane.truePeak ? best : lane));
+    return {
       loudness: {
         ...integrated(energies),
         ...loudnessRange(energies),
         momentaryMaxLufs: momentary.maxLufs,
         shortTermMaxLufs: shortTerm.maxLufs,
         // One loudspeaker's feed heard on two: weight 2.0, gated anew since the absolute gate does not move with it.
-        ...(weights.length === 1 && {
+        ...(perChannel.length === 1 && {
           dualMonoIntegratedLufs: integrated(energies.map((e) => 2 * e)).integratedLufs,
         }),
       },
       truePeak: {
-        maxDbtp: decibels(truePeak),
-        perChannelDbtp: this.#lanes.map((lane) => decibels(lane.truePeak)),
+        maxDbtp: decibels(loudest.truePeak),
+        perChannelDbtp: perChannel.map((lane) => decibels(lane.truePeak)),
+        perChannelAtSeconds: perChannel.map((lane) => (lane.truePeak > 0 ? lane.truePeakAt / rate : null)),
       },
       samplePeak: {
-        maxDbfs: decibels(Math.max(0, ...this.#lanes.map((lane) => lane.samplePeak))),
-        perChannelDbfs: this.#lanes.map((lane) => decibels(lane.samplePeak)),
+        maxDbfs: decibels(Math.max(...perChannel.map((lane) => lane.samplePeak))),
+        perChannelDbfs: perChannel.map((lane) => decibels(lane.samplePeak)),
       },
       times: {
         momentaryMaxAtSeconds: momentary.atSeconds,
         shortTermMaxAtSeconds: shortTerm.atSeconds,
-        truePeakMaxAtSeconds: loudest && truePeak > 0 ? loudest.truePeakAt / rate : null,
+        truePeakMaxAtSeconds: loudest.truePeak > 0 ? loudest.truePeakAt / rate : null,
       },
-      measuredSeconds: this.#samples / rate,
-    };
-    return {
-      figures,
-      series: {
-        stepSeconds: 0.01,
-        energy: energies,
-        truePeak: Float32Array.from(this.#peaks.view()),
-        channelCount: weights.length,
-        channelEnergy: this.#channelEnergies(),
-      },
+      measuredSeconds: samples / rate,
+      ...(this.#downmix && {
+        downmix: {
+          integratedLufs: integrated(this.#downmix.view()).integratedLufs,
+          truePeakDbtp: decibels(Math.max(...lanes.slice(-2).map((lane) => lane.truePeak))),
+        },
+      }),
     };
   }
 
-  #weightedEnergies(): Float64Array {
-    const out = new Float64Array(this.#lanes[0]?.energies.length ?? 0);
-    this.#lanes.forEach((lane, c) => {
-      const weight = this.#options.weights[c];
-      if (weight === 0) return;
-      const { values } = lane.energies;
-      for (let i = 0; i < out.length; i++) out[i] += weight * values[i];
-    });
-    return out;
-  }
-
-  /** Per 100 ms the mean square of each audio channel, interleaved. */
-  #channelEnergies(): Float32Array {
-    const count = Math.floor((this.#lanes[0]?.energies.length ?? 0) / 10);
-    const out = new Float32Array(count * this.#lanes.length);
-    this.#lanes.forEach(({ energies }, c) => {
-      for (let i = 0; i < count; i++) {
-        let sum = 0;
-        for (let k = 0; k < 10; k++) sum += energies.values[i * 10 + k];
-        out[i * this.#lanes.length + c] = sum / 10;
-      }
-    });
-    return out;
+  #wild({ wildCount, wildFirst }: CoreTotals): Finding[] {
+    if (wildCount === 0) return [];
+    return [
+      {
+        code: 'not-a-number',
+        message: `${wildCount} ${wildCount === 1 ? 'sample is' : 'samples are'} not a number or infinite; measured as silence.`,
+        atSeconds: wildFirst / this.#options.sampleRateHz,
+      },
+    ];
   }
 }
+
+/** Of one audio channel; more are not listed one by one. */
+const mostFlatTops = 1000;

@@ -1,4 +1,5 @@
 /** What the engine measures from: bytes in ranges, or samples in blocks. */
+import type { Encoding } from './containers/samples.ts';
 import type { AudioFormat, Finding } from './figures.ts';
 import type { Layout } from './layouts.ts';
 
@@ -8,16 +9,24 @@ export interface ByteSource {
   read(offset: number, length: number): Promise<Uint8Array>;
 }
 
-/** Samples of one programme, planar, full scale 1.0, every sample finite. */
+/** Frames of a file that are wanted; `null`: to its end. */
+export interface FrameWindow {
+  startFrame: number;
+  endFrame: number | null;
+}
+
+/** Frames of one programme, as they lie in the file or come from a decoder. */
 export interface SampleSource {
   readonly format: AudioFormat;
   readonly layout: Layout;
-  /** Findings of the header; those of the samples are added while the blocks are read. */
+  /** Findings of the header; those of decoding are added while the blocks are read. */
   readonly findings: Finding[];
   /** Seconds of programme expected; `null` where nothing tells. */
   readonly secondsTotal: number | null;
-  /** Blocks in order; the arrays are reused, so take what you need before asking for the next. */
-  blocks(signal: AbortSignal): AsyncIterable<{ planar: Float64Array[]; count: number }>;
+  /** Of the frames: all audio channels of the format, interleaved. */
+  readonly encoding: Encoding;
+  /** Whole frames in order, those of the window only; the bytes are reused, so take what you need before asking for more. */
+  blocks(signal: AbortSignal, window?: FrameWindow): AsyncIterable<{ bytes: Uint8Array; frames: number }>;
 }
 
 /** The file cannot be measured: a stable code, and a sentence that says what was found. */

@@ -1,7 +1,6 @@
 import { afterAll, describe, expect, it } from 'vitest';
-import { layoutOfCount, weightsOf } from '../../src/engine/layouts.ts';
-import { Meter } from '../../src/engine/meter.ts';
 import { ebuSignals, type EbuSignal } from '../signals/ebu-signals.ts';
+import { measurePlanar } from '../signals/meter-planar.ts';
 
 /** Largest deviation of each case over the rates that were run, printed with PLIMSOLL_TABLE=1. */
 const deviations = new Map<string, number>();
@@ -11,14 +10,7 @@ afterAll(() => {
 });
 
 function read({ figure, make }: EbuSignal, rate: number): number | null {
-  const planar = make(rate);
-  const meter = new Meter({
-    sampleRateHz: rate,
-    weights: weightsOf(layoutOfCount(planar.length)),
-    interpolate: figure === 'truePeak',
-  });
-  meter.process(planar, planar[0].length);
-  const { loudness, truePeak } = meter.result().figures;
+  const { loudness, truePeak } = measurePlanar(make(rate), rate).figures;
   return {
     integrated: loudness.integratedLufs,
     shortTermMax: loudness.shortTermMaxLufs,

@@ -24,7 +24,7 @@ function* filesUnder(path) {
     const inner = join(path, entry.name);
     if (entry.isDirectory()) yield* filesUnder(inner);
     // The kernel is made by the build itself.
-    else if (!inner.endsWith('.wasm')) yield inner;
+    else if (!inner.endsWith(join('kernel', 'binary.ts'))) yield inner;
   }
 }
 
@@ -48,13 +48,15 @@ function step(name, args) {
   throw new Error(`${name} failed:\n${ran.stdout}\n${ran.stderr}`);
 }
 
+/** Compiles the measuring kernel where its source changed; whoever runs the sources needs it. */
+export const buildKernel = () => step('Building the kernel', [join(root, 'src/engine/kernel/build.mjs')]);
+
 /** Builds when a source changed. Throws the builder's words when a step fails. */
 export async function build({ force = false } = {}) {
   const state = stateOfSources();
   if (!force && existsSync(mark) && readFileSync(mark, 'utf8') === state) return false;
   rmSync(mark, { force: true });
-  const kernel = join(root, 'src/engine/kernel/build.mjs');
-  if (existsSync(kernel)) step('Building the kernel', [kernel]);
+  buildKernel();
   step('Building the site', [join(root, 'node_modules/astro/astro.js'), 'build', '--silent']);
   const entries = readdirSync(join(root, 'workers'))
     .filter((name) => name.endsWith('.ts'))

@@ -2,12 +2,14 @@
 import { spawnSync } from 'node:child_process';
 import { isAbsolute, join, resolve } from 'node:path';
 import { pathToFileURL } from 'node:url';
+import { buildKernel } from './build.mjs';
 import { ensureNode, ensurePackages, ensurePrograms } from './machine.mjs';
 import { root } from './places.mjs';
 
 ensureNode();
 ensurePackages();
 ensurePrograms(['ffmpeg']);
+buildKernel();
 // npm runs scripts in the project's folder; names are meant from where the person stands.
 const from = process.env.INIT_CWD ?? process.cwd();
 const args = process.argv

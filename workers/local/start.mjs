@@ -61,7 +61,7 @@ async function run(folder, hold, stops, isLeaving) {
   const { environmentOf, secretsOf, startServices } = await import('./services.mjs');
   const { startProcess, untilReady } = await import('./processes.mjs');
   const { ensureDatabase } = await import('./postgres.mjs');
-  const { build } = await import('./build.mjs');
+  const { build, buildKernel } = await import('./build.mjs');
 
   const ports = {};
   for (const [name, wished] of Object.entries(wishedPorts))
@@ -69,7 +69,8 @@ async function run(folder, hold, stops, isLeaving) {
   const secrets = secretsOf(folder);
   const servicesStarting = startServices({ folder, ports, secrets });
   servicesStarting.catch(() => {}); // told below, after the build
-  if (!dev) {
+  if (dev) buildKernel();
+  else {
     say('Building, if anything changed …');
     await build();
   }

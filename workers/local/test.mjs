@@ -4,12 +4,14 @@ import { spawn } from 'node:child_process';
 import { mkdtempSync, rmSync, chmodSync, readFileSync, existsSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
+import { buildKernel } from './build.mjs';
 import { ensureNode, ensurePackages, ensurePrograms } from './machine.mjs';
 import { root } from './places.mjs';
 
 ensureNode();
 ensurePackages();
 ensurePrograms(['postgresql', 'redis-server', 'ffmpeg', 'chromium']);
+buildKernel();
 
 const only = process.argv.find((arg) => arg.startsWith('--only='))?.slice(7);
 const folder = mkdtempSync(join(tmpdir(), 'plimsoll-run-'));

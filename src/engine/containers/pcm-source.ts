@@ -1,8 +1,8 @@
 /** Samples that lie uncompressed in a file, read from byte ranges in constant memory. */
 import type { AudioFormat, Finding } from '../figures.ts';
 import type { Layout } from '../layouts.ts';
-import type { ByteSource, SampleSource } from '../source.ts';
-import { deinterleave, type Encoding } from './samples.ts';
+import type { ByteSource, FrameWindow, SampleSource } from '../source.ts';
+import type { Encoding } from './samples.ts';
 
 /** What a header tells, and where the samples truly are. */
 export interface PcmLayout {
@@ -15,7 +15,7 @@ export interface PcmLayout {
   frames: number;
 }
 
-const blockBytes = 256 * 1024;
+const blockBytes = 1024 * 1024;
 
 export class PcmSource implements SampleSource {
   readonly format: AudioFormat;
@@ -33,46 +33,29 @@ export class PcmSource implements SampleSource {
     this.secondsTotal = pcm.frames / pcm.format.sampleRateHz;
   }
 
-  async *blocks(signal: AbortSignal) {
+  get encoding(): Encoding {
+    return this.pcm.encoding;
+  }
+
+  async *blocks(signal: AbortSignal, window: FrameWindow = { startFrame: 0, endFrame: null }) {
     const { encoding, dataOffset, frames, format } = this.pcm;
     const frameBytes = encoding.bytes * format.channels;
     const blockFrames = Math.max(1, Math.floor(blockBytes / frameBytes));
-    const planar = Array.from({ length: format.channels }, () => new Float64Array(blockFrames));
-    const wild = new WildSamples(format.sampleRateHz);
-    for (let frame = 0; frame < frames;) {
+    const end = Math.min(frames, window.endFrame ?? frames);
+    const readFrom = (frame: number) =>
+      this.bytes.read(dataOffset + frame * frameBytes, Math.min(blockFrames, end - frame) * frameBytes);
+    let frame = Math.max(0, window.startFrame);
+    let next = frame < end ? readFrom(frame) : null;
+    while (next) {
       signal.throwIfAborted();
-      const wanted = Math.min(blockFrames, frames - frame);
-      const bytes = await this.bytes.read(dataOffset + frame * frameBytes, wanted * frameBytes);
+      const bytes: Uint8Array = await next;
       const count = Math.floor(bytes.length / frameBytes);
       if (count === 0) throw new Error('The file became shorter while it was read.');
-      deinterleave(bytes, count, encoding, planar, wild.from(frame));
-      yield { planar, count };
       frame += count;
+      // The next block is on its way while this one is measured.
+      next = frame < end ? readFrom(frame) : null;
+      next?.catch(() => {});
+      yield { bytes, frames: count };
     }
-    wild.tell(this.findings);
-  }
-}
-
-/** Counts samples that are not numbers, and tells them once. */
-export class WildSamples {
-  #count = 0;
-  #firstFrame = Infinity;
-  constructor(private readonly sampleRateHz: number) {}
-
-  /** Takes the wild samples of a block that begins at this frame. */
-  from(blockFrame: number): (frame: number) => void {
-    return (frame) => {
-      this.#count++;
-      this.#firstFrame = Math.min(this.#firstFrame, blockFrame + frame);
-    };
-  }
-
-  tell(findings: Finding[]): void {
-    if (this.#count === 0) return;
-    findings.push({
-      code: 'not-a-number',
-      message: `${this.#count} ${this.#count === 1 ? 'sample is' : 'samples are'} not a number or infinite; measured as silence.`,
-      atSeconds: this.#firstFrame / this.sampleRateHz,
-    });
   }
 }

@@ -1,4 +1,4 @@
-/** Interleaved sample bytes to planar Float64, full scale 1.0. */
+/** The forms that a sample is stored in. */
 
 export interface Encoding {
   kind: 'integer' | 'unsigned' | 'float';
@@ -26,29 +26,5 @@ export function sampleReader({
         : (v, o) => ((v.getInt8(o) << 16) | v.getUint16(o + 1, false)) / 8_388_608;
     default:
       return (v, o) => v.getInt32(o, le) / 2_147_483_648;
-  }
-}
-
-/** Fills the planar arrays with `frames` frames. A sample that is not finite becomes silence, and its frame is told. */
-export function deinterleave(
-  bytes: Uint8Array,
-  frames: number,
-  encoding: Encoding,
-  planar: Float64Array[],
-  onWild: (frame: number) => void,
-): void {
-  const view = new DataView(bytes.buffer, bytes.byteOffset, bytes.byteLength);
-  const read = sampleReader(encoding);
-  const stride = planar.length * encoding.bytes;
-  for (let c = 0; c < planar.length; c++) {
-    const out = planar[c];
-    for (let i = 0, o = c * encoding.bytes; i < frames; i++, o += stride) {
-      const x = read(view, o);
-      if (Number.isFinite(x)) out[i] = x;
-      else {
-        out[i] = 0;
-        onWild(i);
-      }
-    }
   }
 }

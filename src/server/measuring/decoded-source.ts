@@ -3,9 +3,8 @@ import { spawn } from 'node:child_process';
 import { once } from 'node:events';
 import type { Finding } from '../../engine/figures.ts';
 import { layoutFindings } from '../../engine/containers/extent.ts';
-import { WildSamples } from '../../engine/containers/pcm-source.ts';
-import { deinterleave, type Encoding } from '../../engine/containers/samples.ts';
-import { UnreadableError, type SampleSource } from '../../engine/source.ts';
+import type { Encoding } from '../../engine/containers/samples.ts';
+import { UnreadableError, type FrameWindow, type SampleSource } from '../../engine/source.ts';
 import { jail, type Probe } from './probe.ts';
 
 /** A decoder that gives nothing for so long hangs. */
@@ -18,6 +17,7 @@ export class DecodedSource implements SampleSource {
   readonly layout;
   readonly findings: Finding[];
   readonly secondsTotal: number | null;
+  readonly encoding: Encoding;
 
   constructor(
     private readonly path: string,
@@ -27,14 +27,14 @@ export class DecodedSource implements SampleSource {
     this.layout = probed.layout;
     this.findings = layoutFindings(probed.layout);
     this.secondsTotal = probed.format.durationSeconds || null;
+    // A 32-bit float holds 24-bit samples exactly; deeper ones need a double.
+    const wide = (probed.format.bitDepth ?? 0) > 24;
+    this.encoding = { kind: 'float', bytes: wide ? 8 : 4, littleEndian: true };
   }
 
-  async *blocks(signal: AbortSignal) {
-    const { format } = this;
-    // A 32-bit float holds 24-bit samples exactly; deeper ones need a double.
-    const wide = (format.bitDepth ?? 0) > 24;
-    const encoding: Encoding = { kind: 'float', bytes: wide ? 8 : 4, littleEndian: true };
-    const raw = wide ? 'f64le' : 'f32le';
+  async *blocks(signal: AbortSignal, window: FrameWindow = { startFrame: 0, endFrame: null }) {
+    const { format, encoding } = this;
+    const raw = encoding.bytes === 8 ? 'f64le' : 'f32le';
     const child = spawn(
       'ffmpeg',
       [
@@ -71,8 +71,6 @@ export class DecodedSource implements SampleSource {
     signal.addEventListener('abort', kill, { once: true });
 
     const frameBytes = encoding.bytes * format.channels;
-    const wild = new WildSamples(format.sampleRateHz);
-    let planar: Float64Array[] = [];
     let rest: Buffer = Buffer.alloc(0);
     let frames = 0;
     try {
@@ -82,11 +80,10 @@ export class DecodedSource implements SampleSource {
         const count = Math.floor(bytes.length / frameBytes);
         rest = bytes.subarray(count * frameBytes);
         if (count === 0) continue;
-        if ((planar[0]?.length ?? 0) < count)
-          planar = Array.from({ length: format.channels }, () => new Float64Array(count));
-        deinterleave(bytes, count, encoding, planar, wild.from(frames));
+        const from = Math.max(0, Math.min(count, window.startFrame - frames));
+        const to = Math.min(count, (window.endFrame ?? Infinity) - frames);
         frames += count;
-        yield { planar, count };
+        if (to > from) yield { bytes: bytes.subarray(from * frameBytes, to * frameBytes), frames: to - from };
       }
       const code = await ended;
       signal.throwIfAborted();
@@ -96,7 +93,6 @@ export class DecodedSource implements SampleSource {
           `Decoding stood still for ${stallSeconds} s and was ended. The file may be damaged; export it again.`,
         );
       this.#judgeEnd(code, frames, complaints);
-      wild.tell(this.findings);
     } finally {
       clearTimeout(watch);
       signal.removeEventListener('abort', kill);

@@ -2,6 +2,7 @@
 import { createHash } from 'node:crypto';
 import { engineVersion } from '../../engine/figures.ts';
 import { encodeSeries } from '../../engine/series.ts';
+import type { Measured } from '../../engine/measure.ts';
 import { UnreadableError, type ByteSource } from '../../engine/source.ts';
 import { measureSource } from '../measuring/measure-source.ts';
 import type { MeasuringOutcome, MeasuringTask } from '../queue/measuring-contract.ts';
@@ -94,7 +95,7 @@ export async function measureObject(task: MeasuringTask, options: Options): Prom
   }
 }
 
-type Read = Awaited<ReturnType<typeof measureSource>>;
+type Read = Measured;
 
 /** The engine's answer; a file that it cannot read is an answer too, so that the hash is looked at all the same. */
 async function readAll(
@@ -103,7 +104,7 @@ async function readAll(
   { onProgress, signal, scratchDir }: Options,
 ): Promise<({ ok: true } & Read) | { ok: false; code: string; message: string }> {
   try {
-    const read = await measureSource(source, task.fileName, {
+    const [read] = await measureSource(source, task.fileName, {
       onProgress: (secondsDone, secondsTotal) => onProgress({ secondsDone, secondsTotal }),
       signal,
       scratchDir,
