@@ -197,7 +197,7 @@ export function PassageChart({
       showAll();
     } else if (event.key === '+' || event.key === '-') zoomBy(event.key === '+' ? 0.7 : 1 / 0.7);
   };
-  const label = `Loudness over ${formatTimecode(length)}; ${passage.excursions.length === 0 ? 'no limit is passed' : `${passage.excursions.length} excursions, listed beneath`}. Arrow keys move by excursion, Enter plays from there, plus and minus zoom, Escape shows all.`;
+  const label = `Loudness over ${formatTimecode(length)}; ${passage.excursions.length === 0 ? 'no limit is passed' : `${passage.excursions.length} excursions, listed beneath`}. Arrow keys move by excursion, ${onPlayFrom ? 'Enter plays from there, ' : ''}plus and minus zoom, Escape shows all.`;
   return (
     <div className="relative">
       {shown && (

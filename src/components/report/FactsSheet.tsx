@@ -2,7 +2,11 @@ import { Figure } from '@/components/look/Figure.tsx';
 import type { DeliverableReport } from '@/domain/api/deliverables.ts';
 import { formatBytes, formatRate, formatTimecode } from '@/domain/figures-text.ts';
 
-type Measured = NonNullable<DeliverableReport['measurement']>;
+/** What the sheet reads of a measurement: the bench's has no row. */
+type Measured = Pick<
+  NonNullable<DeliverableReport['measurement']>,
+  'engineVersion' | 'format' | 'figures' | 'findings'
+>;
 interface Props {
   measurement: Measured;
   fileName: string;

@@ -6,11 +6,10 @@ import { Notice } from '@/components/look/Notice.tsx';
 import { PassageChart } from '@/components/passage/PassageChart.tsx';
 import { draughtsOf } from '@/components/passage/draughts.ts';
 import { useAddressState } from '@/components/table/use-address-state.ts';
-import { passageSchema, type Passage } from '@/domain/api/deliverables.ts';
-import { formatLevel, formatTimecode } from '@/domain/figures-text.ts';
+import { passageSchema } from '@/domain/api/deliverables.ts';
+import { formatLevel } from '@/domain/figures-text.ts';
 import type { SpecBody } from '@/domain/spec.ts';
-import type { Excursion } from '@/domain/verdict.ts';
-import { curveName } from './curve-name.ts';
+import { Excursions } from './Excursions.tsx';
 
 interface Props {
   passageUrl: string;
@@ -138,67 +137,5 @@ function Panel({ passageUrl, audioUrl, specBody, integratedLufs, search, compact
         />
       )}
     </div>
-  );
-}
-
-interface ExcursionsProps {
-  passage: Passage;
-  current: number | null;
-  compact: boolean;
-  onPlay: (excursion: Excursion) => void;
-}
-
-/** Where a limit is passed, by timecode: the flags of the chart as a list. */
-function Excursions({ passage, current, compact, onPlay }: ExcursionsProps) {
-  const { excursions } = passage;
-  if (excursions.length === 0)
-    return compact ? null : <p className="text-muted">No moment passes a limit of this spec.</p>;
-  return (
-    <section className={compact ? '' : 'sheet px-4 py-3'}>
-      <h2 className="mb-1 text-[13px] font-semibold">Excursions</h2>
-      <div className="max-h-80 overflow-auto">
-        <table className="rows text-[13px]" aria-label="Excursions">
-          <thead className="sr-only">
-            <tr>
-              {['Number', 'What', 'From', 'For', 'Beyond', 'Play'].map((name) => (
-                <th key={name} scope="col" className={name === 'For' ? 'max-sm:hidden' : undefined}>
-                  {name}
-                </th>
-              ))}
-            </tr>
-          </thead>
-          <tbody>
-            {excursions.map((one) => (
-              <tr key={one.number} className={one.number === current ? 'bg-pick' : ''}>
-                <td className="w-8">
-                  <span
-                    className={`num grid h-[19px] w-[19px] place-items-center text-[11px] font-semibold text-sheet ${one.breach === 'reject' ? 'bg-hull' : 'bg-brass'}`}
-                  >
-                    {one.number}
-                  </span>
-                </td>
-                <td>{curveName(one)}</td>
-                <td className="num">{formatTimecode(one.startSeconds)}</td>
-                <td className="n num max-sm:hidden">{formatLevel(one.lengthSeconds)} s</td>
-                <td className={`n num font-semibold ${one.breach === 'reject' ? 'text-hull' : 'text-brass'}`}>
-                  +{formatLevel(one.beyond)}
-                  <span className="unit">{one.unit === 'dBTP' ? 'dB' : 'LU'}</span>
-                </td>
-                <td className="n">
-                  <button
-                    type="button"
-                    className="text-teal underline underline-offset-4"
-                    onClick={() => onPlay(one)}
-                    aria-label={`Play from excursion ${one.number}`}
-                  >
-                    Play
-                  </button>
-                </td>
-              </tr>
-            ))}
-          </tbody>
-        </table>
-      </div>
-    </section>
   );
 }
