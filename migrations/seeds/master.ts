@@ -1,19 +1,24 @@
 /** Makes a master of a demo deliverable: synthesised, brought to its loudness by the product's own engine, written as WAV. */
 import wavefile from 'wavefile';
 import { Meter } from '../../src/engine/meter.ts';
-import { layoutOfCount, weightsOf } from '../../src/engine/layouts.ts';
+import { layoutOfCount } from '../../src/engine/layouts.ts';
 import type { DemoDeliverable } from './demo-programmes.ts';
 import { addOver, applyGain, limit, synthesise } from './synthesis.ts';
 
 const ceilingDbfs = -3;
 
 function integratedOf(planar: Float64Array[], sampleRateHz: number): number {
+  const frames = planar[0].length;
+  const interleaved = new Float64Array(frames * planar.length);
+  planar.forEach((samples, c) => samples.forEach((x, i) => (interleaved[i * planar.length + c] = x)));
   const meter = new Meter({
     sampleRateHz,
-    weights: weightsOf(layoutOfCount(planar.length)),
-    interpolate: false,
+    encoding: { kind: 'float', bytes: 8, littleEndian: true },
+    frameChannels: planar.length,
+    audioChannels: planar.map((_, c) => c),
+    speakers: layoutOfCount(planar.length).speakers,
   });
-  meter.process(planar, planar[0].length);
+  meter.process(new Uint8Array(interleaved.buffer), frames);
   const { integratedLufs } = meter.result().figures.loudness;
   if (integratedLufs === null) throw new Error('A demo programme came out silent');
   return integratedLufs;

@@ -18,6 +18,8 @@ export const doubles: i32 = 2;
 let form: i32 = 0;
 /** Puts the bytes of a sample, of either order, left-justified into a little-endian lane. */
 let pattern: v128 = i64x2.splat(0);
+let pairPattern: v128 = i64x2.splat(0);
+let sampleBytes: i32 = 0;
 let flip: v128 = i64x2.splat(0);
 
 export let usedBits: i32 = 0;
@@ -26,16 +28,23 @@ export let wildFirst: f64 = 0;
 
 export function configureSamples(theForm: i32, bytes: i32, littleEndian: bool, unsigned: bool): void {
   form = theForm;
+  tight = frameBytes + 2 * bytes <= 16;
   const width = form == doubles ? 8 : 4;
-  const scratch = heap.alloc(16);
+  const scratch = heap.alloc(32);
   for (let i = 0; i < 16; i++) {
     const place = i % width; // 0: lowest byte of the lane
     const fromTop = width - 1 - place;
     // Out of range gives 0: the bytes below a short sample.
     const source = fromTop >= bytes ? 128 : i - place + (littleEndian ? bytes - 1 - fromTop : fromTop);
     store<u8>(scratch + i, <u8>source);
+    // The same where the lanes are two samples of one frame, then two of the next.
+    const lane = i >> 2;
+    const begin = (lane >> 1) * (tight ? frameBytes : 8) + (lane & 1) * bytes;
+    store<u8>(scratch + i, <u8>(source == 128 ? 128 : source - (i - place) + begin), 16);
   }
   pattern = v128.load(scratch);
+  pairPattern = v128.load(scratch, 16);
+  sampleBytes = bytes;
   flip = i32x4.splat(unsigned ? 0x80000000 : 0);
 }
 
@@ -49,6 +58,11 @@ function gather(at: usize, stride: usize): v128 {
 /** The first `frames` frames of the input, behind the rows' last samples. The input is followed by three frames of silence. */
 export function convert(frames: i32): void {
   for (let lane = 0; lane < measured; lane++) {
+    if (areNeighbours(lane)) {
+      convertNeighbours(lane, frames);
+      lane++;
+      continue;
+    }
     const from = inputPointer() + <usize>load<i32>(offsetsPointer() + <usize>(lane * 4));
     if (form == integers) {
       if (wide) convertWideIntegers(lane, from, frames);
@@ -56,6 +70,43 @@ export function convert(frames: i32): void {
     } else if (form == floats) convertFloats(lane, from, frames);
     else convertDoubles(lane, from, frames);
   }
+}
+
+/** Whether the next lane's samples lie behind this one's in each frame, in a form whose pairs are read at once. */
+function areNeighbours(lane: i32): bool {
+  if (form != integers || wide || lane + 1 >= measured) return false;
+  const offset = offsetsPointer() + <usize>(lane * 4);
+  return load<i32>(offset, 4) - load<i32>(offset) == sampleBytes;
+}
+
+/** Whether two frames' pairs lie within 16 bytes; else each is loaded into a half. */
+let tight: bool = false;
+function twoFrames(from: usize, stride: usize): v128 {
+  return tight ? v128.load(from) : v128.load64_lane(from + stride, v128.load64_zero(from), 1);
+}
+
+/** Two samples of each of two frames at once. */
+function convertNeighbours(lane: i32, frames: i32): void {
+  const stride = <usize>frameBytes;
+  const shape = pairPattern;
+  const sign = flip;
+  const scale = f32x4.splat(unit);
+  let bits = i64x2.splat(0);
+  let from = inputPointer() + <usize>load<i32>(offsetsPointer() + <usize>(lane * 4));
+  let to = row(lane) + <usize>(filled * 4);
+  const apart = row(lane + 1) - row(lane);
+  const end = to + <usize>(frames * 4);
+  for (; to < end; to += 16) {
+    const a = v128.xor(i8x16.swizzle(twoFrames(from, stride), shape), sign);
+    const b = v128.xor(i8x16.swizzle(twoFrames(from + 2 * stride, stride), shape), sign);
+    from += 4 * stride;
+    bits = v128.or(bits, v128.or(a, b));
+    const x = f32x4.mul(f32x4.convert_i32x4_s(a), scale);
+    const y = f32x4.mul(f32x4.convert_i32x4_s(b), scale);
+    v128.store(to, v128.shuffle<i32>(x, y, 0, 2, 4, 6));
+    v128.store(to + apart, v128.shuffle<i32>(x, y, 1, 3, 5, 7));
+  }
+  noteBits(bits);
 }
 
 const unit: f32 = 1 / 2147483648;

@@ -6,9 +6,9 @@
 import { convert } from './convert';
 import { mix } from './mix';
 import { dropWhole, recordOf, setPeak, setTruePeak } from './records';
-import { boundary, dropBefore, filled, grow, history, lanes, measured, origin, silenceAhead } from './rows';
-import { closeRuns, dropEvents, follow, peakOf } from './runs';
-import { beginStep, peaksOf, stepPeakOver } from './true-peak';
+import { boundary, dropBefore, filled, grow, history, lanes, measured, silenceAhead, wide } from './rows';
+import { closeRuns, dropEvents, follow, widePeakOf } from './runs';
+import { beginStep, peaksOf, quiet, stepPeakOver, survey } from './true-peak';
 import { weigh } from './weighing';
 
 export { allocate, inputPointer, newestPointer, offsetsPointer } from './rows';
@@ -67,22 +67,18 @@ function endStep(to: i32, last: bool): void {
 
 /** Peaks and runs of a step, which go on record where there is one; gives the largest sample of the measured lanes. */
 function peaksUpTo(from: i32, to: i32, last: bool, record: usize): f64 {
-  // What rings before the programme's begin counts for its first step.
-  const first = from - (peakedSteps == 0 ? half : 0);
-  const end = to + (last ? half : 0);
+  // What rings before the programme's begin counts for its first step, what rings behind its end for its last.
+  const lead = peakedSteps == 0 ? half : 0;
+  const trail = last ? half : 0;
   let largest: f64 = 0;
   beginStep();
   for (let lane = 0; lane < lanes; lane++) {
-    const peak = peakOf(lane, from, to);
+    const narrow = survey(lane, from, to, lead, trail);
+    const peak = wide ? widePeakOf(lane, from, to) : <f64>narrow;
     if (lane < measured) largest = max(largest, peak);
     if (record != 0) setPeak(record, lane, peak);
-    follow(lane, from, to, peak);
-    peaksOf(lane, first, end, lane < measured);
+    follow(lane, from, to, peak, quiet);
+    peaksOf(lane, from, to + trail, narrow, lane < measured);
   }
   return largest;
-}
-
-/** Place of the next sample. */
-export function samplesTaken(): f64 {
-  return origin + <f64>filled;
 }

@@ -1,5 +1,5 @@
 /** Runs of zeros, of samples at full scale, and of equal samples at a lane's own peak; told as they end. */
-import { lanes, measured, origin, row, sampleAt, wide, wideRow } from './rows';
+import { lanes, measured, origin, sampleAt, wideRow } from './rows';
 
 const zeros: f64 = 0;
 const full: f64 = 1;
@@ -48,37 +48,24 @@ export function lanePeak(lane: i32): f64 {
   return load<f64>(peaks + <usize>(lane * 8));
 }
 
-/** Sample peak of a stretch. */
-export function peakOf(lane: i32, from: i32, to: i32): f64 {
+/** Sample peak of a stretch of float64 samples. */
+export function widePeakOf(lane: i32, from: i32, to: i32): f64 {
+  const start = wideRow(lane);
   let i = from;
-  let peak: f64 = 0;
-  if (!wide) {
-    const start = row(lane);
-    let most = f32x4.splat(0);
-    for (; i + 4 <= to; i += 4) most = f32x4.pmax(most, f32x4.abs(v128.load(start + ((<usize>i) << 2))));
-    peak = <f64>(
-      max(
-        max(f32x4.extract_lane(most, 0), f32x4.extract_lane(most, 1)),
-        max(f32x4.extract_lane(most, 2), f32x4.extract_lane(most, 3)),
-      )
-    );
-  } else {
-    const start = wideRow(lane);
-    let most = f64x2.splat(0);
-    for (; i + 2 <= to; i += 2) most = f64x2.pmax(most, f64x2.abs(v128.load(start + ((<usize>i) << 3))));
-    peak = max(f64x2.extract_lane(most, 0), f64x2.extract_lane(most, 1));
-  }
+  let most = f64x2.splat(0);
+  for (; i + 2 <= to; i += 2) most = f64x2.pmax(most, f64x2.abs(v128.load(start + (<usize>i << 3))));
+  let peak = max(f64x2.extract_lane(most, 0), f64x2.extract_lane(most, 1));
   for (; i < to; i++) peak = max(peak, Math.abs(sampleAt(lane, i)));
   return peak;
 }
 
-/** Follows the runs of a stretch whose sample peak is known. */
-export function follow(lane: i32, from: i32, to: i32, peak: f64): void {
+/** Follows the runs of a step; `quiet`: it may hold a long run of zeros. */
+export function follow(lane: i32, from: i32, to: i32, peak: f64, quiet: bool): void {
   const largest = peaks + <usize>(lane * 8);
   if (peak > load<f64>(largest)) store<f64>(largest, peak);
   if (lane >= measured) return;
   const mine = state + <usize>(lane * 32);
-  if (load<i32>(mine) > 0 || hasQuietGroup(lane, from, to)) followZeros(mine, lane, from, to);
+  if (quiet || load<i32>(mine) > 0) followZeros(mine, lane, from, to);
   if (peak > 0 && (peak >= fullScale || peak >= load<f64>(largest))) followTops(mine, lane, from, to);
   else closeTops(mine, lane, from);
 }
@@ -99,18 +86,6 @@ function tell(kind: f64, lane: i32, at: i32, length: i32, value: f64): void {
   store<f64>(event, origin + <f64>at - <f64>length, 16);
   store<f64>(event, <f64>length, 24);
   store<f64>(event, value, 32);
-}
-
-/** Whether nine samples in a row, at one of the places 8 apart, are zero: of 16 zeros in a row some nine are. */
-function hasQuietGroup(lane: i32, from: i32, to: i32): bool {
-  const start = row(lane);
-  for (let i = from; i < to; i += 8) {
-    const at = start + ((<usize>i) << 2);
-    const bits = v128.or(v128.or(v128.load(at), v128.load(at, 16)), v128.load(at, 20));
-    // Doubled, so that the sign of a zero falls out.
-    if (!v128.any_true(i32x4.shl(bits, 1))) return true;
-  }
-  return false;
 }
 
 function followZeros(mine: usize, lane: i32, from: i32, to: i32): void {
