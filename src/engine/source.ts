@@ -3,10 +3,10 @@ import type { Encoding } from './containers/samples.ts';
 import type { AudioFormat, Finding } from './figures.ts';
 import type { Layout } from './layouts.ts';
 
-/** Bytes of a file, wherever they lie; `read` gives fewer only at the end. */
+/** Bytes of a file, wherever they lie; `read` gives fewer only at the end, and may use `into` instead of memory of its own. */
 export interface ByteSource {
   readonly size: number;
-  read(offset: number, length: number): Promise<Uint8Array>;
+  read(offset: number, length: number, into?: Uint8Array): Promise<Uint8Array>;
 }
 
 /** Frames of a file that are wanted; `null`: to its end. */

@@ -15,7 +15,7 @@ export interface PcmLayout {
   frames: number;
 }
 
-const blockBytes = 1024 * 1024;
+const blockBytes = 512 * 1024;
 
 export class PcmSource implements SampleSource {
   readonly format: AudioFormat;
@@ -42,8 +42,14 @@ export class PcmSource implements SampleSource {
     const frameBytes = encoding.bytes * format.channels;
     const blockFrames = Math.max(1, Math.floor(blockBytes / frameBytes));
     const end = Math.min(frames, window.endFrame ?? frames);
+    const buffers = [0, 1].map(() => new Uint8Array(blockFrames * frameBytes));
+    let turn = 0;
     const readFrom = (frame: number) =>
-      this.bytes.read(dataOffset + frame * frameBytes, Math.min(blockFrames, end - frame) * frameBytes);
+      this.bytes.read(
+        dataOffset + frame * frameBytes,
+        Math.min(blockFrames, end - frame) * frameBytes,
+        buffers[turn++ % 2],
+      );
     let frame = Math.max(0, window.startFrame);
     let next = frame < end ? readFrom(frame) : null;
     while (next) {

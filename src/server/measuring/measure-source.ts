@@ -62,9 +62,10 @@ export async function measureFile(path: string, options: MeasureOptions = {}) {
     const { size } = await file.stat();
     const bytes: ByteSource = {
       size,
-      async read(offset, length) {
-        const out = new Uint8Array(Math.max(0, Math.min(length, size - offset)));
-        const { bytesRead } = await file.read(out, 0, out.length, offset);
+      async read(offset, length, into) {
+        const wanted = Math.max(0, Math.min(length, size - offset));
+        const out = into && into.length >= wanted ? into : new Uint8Array(wanted);
+        const { bytesRead } = await file.read(out, 0, wanted, offset);
         return out.subarray(0, bytesRead);
       },
     };

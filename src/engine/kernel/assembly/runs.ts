@@ -53,7 +53,7 @@ export function widePeakOf(lane: i32, from: i32, to: i32): f64 {
   const start = wideRow(lane);
   let i = from;
   let most = f64x2.splat(0);
-  for (; i + 2 <= to; i += 2) most = f64x2.pmax(most, f64x2.abs(v128.load(start + (<usize>i << 3))));
+  for (; i + 2 <= to; i += 2) most = f64x2.pmax(most, f64x2.abs(v128.load(start + ((<usize>i) << 3))));
   let peak = max(f64x2.extract_lane(most, 0), f64x2.extract_lane(most, 1));
   for (; i < to; i++) peak = max(peak, Math.abs(sampleAt(lane, i)));
   return peak;

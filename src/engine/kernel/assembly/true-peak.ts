@@ -107,10 +107,10 @@ let endGroup: i32 = 0;
 export let quiet: bool = false;
 
 function groupAt(j: i32): usize {
-  return groups + (<usize>(j - firstGroup + reach) << 4);
+  return groups + ((<usize>(j - firstGroup + reach)) << 4);
 }
 function bendAt(j: i32): usize {
-  return bends + (<usize>(j - firstGroup + reach) << 4);
+  return bends + ((<usize>(j - firstGroup + reach)) << 4);
 }
 
 /**
@@ -121,7 +121,7 @@ export function survey(lane: i32, from: i32, to: i32, lead: i32, trail: i32): f3
   firstGroup = -((lead + 7) >> 3);
   endGroup = (to + trail - from + 7) >> 3;
   quiet = false;
-  const start = row(lane) + (<usize>from << 2);
+  const start = row(lane) + ((<usize>from) << 2);
   let peaks = f32x4.splat(0);
   let silent = 0;
   const last = (to - from) >> 3;
@@ -136,7 +136,7 @@ export function survey(lane: i32, from: i32, to: i32, lead: i32, trail: i32): f3
   }
   quiet = silent != 0;
   let peak = largestOf(peaks);
-  for (let i = last << 3; i < to - from; i++) peak = max(peak, abs(load<f32>(start + (<usize>i << 2))));
+  for (let i = last << 3; i < to - from; i++) peak = max(peak, abs(load<f32>(start + ((<usize>i) << 2))));
   return peak;
 }
 
@@ -151,7 +151,7 @@ export function peaksOf(lane: i32, from: i32, end: i32, peak: f32, counts: bool)
   const most = max(peak, largestOf(around));
   if (most * gain * (1 + slack) <= limitOf(lane, counts)) return;
 
-  const start = row(lane) + (<usize>from << 2);
+  const start = row(lane) + ((<usize>from) << 2);
   let mostBends = f32x4.splat(0);
   for (let j = firstGroup - reach; j < endGroup + reach; j++) {
     const at = start + <usize>(j << 5);
@@ -192,7 +192,7 @@ function examine(lane: i32, from: i32, end: i32, j: i32, counts: bool): void {
   const rounding = most * slack;
   if (min(own + curve * bent, gain * most) + rounding <= limitOf(lane, counts)) return;
   const first = from + 8 * j;
-  const at = row(lane) + (<usize>first << 2);
+  const at = row(lane) + ((<usize>first) << 2);
   let low = at - <usize>((half - 1) * 4);
   let high = at + <usize>(half * 4);
   let even0 = f32x4.splat(0);
