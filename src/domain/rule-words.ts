@@ -45,6 +45,7 @@ export const findingNames: Record<FindingCode, string> = {
   'not-a-number': 'Samples that are no numbers',
   'unreadable-part': 'Unreadable part',
   'layout-assumed': 'Layout not told',
+  'measured-differently': 'Measured differently',
 };
 
 /** A fact's value in words: '48 kHz', '24 bit', '5.1'. */

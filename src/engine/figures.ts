@@ -35,6 +35,7 @@ export const findingCodes = [
   'not-a-number', // NaN or infinite float samples, measured as silence
   'unreadable-part', // the decoder skipped or concealed damaged data
   'layout-assumed', // the file does not say its layout; the usual order was assumed
+  'measured-differently', // the bench that sent the file had other figures than the service
 ] as const;
 export type FindingCode = (typeof findingCodes)[number];
 

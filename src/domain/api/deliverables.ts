@@ -7,6 +7,7 @@ import {
 } from '../vocabulary.ts';
 import { excursionSchema, verdictBodySchema } from '../verdict.ts';
 import { specBodySchema } from '../spec.ts';
+import { benchComparisonSchema, benchFiguresSchema } from '../bench-figures.ts';
 import { idSchema, itemResultSchema, listOf, momentSchema, pageQuerySchema, personSchema } from './common.ts';
 
 export const formatSchema = z.object({
@@ -120,6 +121,8 @@ export const deliverableReportSchema = deliverableRowSchema.extend({
   uploadedBy: personSchema,
   measuredAt: momentSchema.nullable(),
   measurement: measurementSchema.nullable(),
+  /** How it compares with what the bench measured before it was sent; `null` where no bench did. */
+  bench: benchComparisonSchema.nullable(),
   specs: z.array(z.object({ specVersionId: idSchema, body: specBodySchema })),
   replaces: z.object({ id: idSchema, fileName: z.string() }).nullable(),
 });
@@ -176,6 +179,8 @@ export const createUploadsSchema = z.object({
         byteSize: z.number().int().nonnegative(),
         lastModifiedMs: z.number().int().nonnegative(),
         details: deliverableDetailsSchema.default({}),
+        /** What the bench measured of it; the service measures again and says where the two differ. */
+        benchFigures: benchFiguresSchema.optional(),
       }),
     )
     .min(1)

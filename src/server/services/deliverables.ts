@@ -30,6 +30,7 @@ import { readProgress, type Progress } from '../queue/progress.ts';
 import { redis } from '../redis.ts';
 import { done, lacking, refuse, type Answer } from '../refusals.ts';
 import type { MemberScope, Scope } from '../scope.ts';
+import { readBenchComparison } from './bench-comparison.ts';
 import { setDeliverableDetails } from './deliverable-details.ts';
 import { itemResult, type ItemResult } from './item-results.ts';
 import { judgeDeliverables } from './judging.ts';
@@ -147,6 +148,9 @@ export async function getDeliverableReport(scope: Scope, id: string): Promise<An
       measuringSeconds: measurement.measuringSeconds,
       createdAt: measurement.createdAt.toISOString(),
     },
+    bench:
+      measurement &&
+      (await readBenchComparison(db(), scope, id, measurement.figures, measurement.engineVersion)),
     specs: measurement ? await listJudgedBodies(db(), scope, measurement.id, versionIds) : [],
     replaces,
   });

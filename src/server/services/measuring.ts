@@ -24,6 +24,7 @@ import {
 import { clearProgress, setProgress, type Progress } from '../queue/progress.ts';
 import { redis } from '../redis.ts';
 import { systemScope } from '../scope.ts';
+import { findingsWithBench } from './bench-comparison.ts';
 import { judgeDeliverables } from './judging.ts';
 
 /** A file that was begun this many times, and killed whoever measured it, is not begun again. */
@@ -141,7 +142,14 @@ async function writeMeasured(
       deliverableId,
       layout: outcome.format.layout,
     });
-    await insertMeasurement(trx, scope, { ...outcome, organisationId, deliverableId, presentationId });
+    const findings = await findingsWithBench(trx, scope, deliverableId, outcome, outcome.engineVersion);
+    await insertMeasurement(trx, scope, {
+      ...outcome,
+      findings,
+      organisationId,
+      deliverableId,
+      presentationId,
+    });
     if (!(await markMeasured(trx, scope, deliverableId, outcome.sha256))) return;
     await judgeDeliverables(trx, scope, { deliverableIds: [deliverableId] });
     await recordEvent(trx, scope, {

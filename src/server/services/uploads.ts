@@ -8,6 +8,7 @@ import type {
 } from '../../domain/api/deliverables.ts';
 import { partSize, planUpload, whyNotUploadable } from '../../domain/upload-plan.ts';
 import { recordEvent } from '../db/audit-repository.ts';
+import { setBenchFigures } from '../db/bench-figures-repository.ts';
 import { db, inTransaction } from '../db/connection.ts';
 import {
   findDeliverableCore,
@@ -126,8 +127,10 @@ async function createUpload(scope: MemberScope, file: NewFile, taken: Set<string
   );
   if (broken) {
     taken.add(broken.deliverableId);
-    if ((await multipartStands(broken.storageKey, broken.storageUploadId)) !== 'gone')
+    if ((await multipartStands(broken.storageKey, broken.storageUploadId)) !== 'gone') {
+      if (file.benchFigures) await setBenchFigures(db(), scope, broken.deliverableId, file.benchFigures);
       return done(toUpload(broken, true));
+    }
     await giveUp(scope, broken);
   }
 
@@ -152,6 +155,7 @@ async function createUpload(scope: MemberScope, file: NewFile, taken: Set<string
       lastModifiedMs: file.lastModifiedMs,
       ...plan,
     });
+    if (file.benchFigures) await setBenchFigures(trx, scope, deliverableId, file.benchFigures);
     const detailed = await setDeliverableDetails(trx, scope, deliverableId, file.details);
     if (!detailed.ok) return detailed;
     const record = await findUpload(trx, scope, deliverableId);
