@@ -69,6 +69,7 @@ export const routes: Record<string, Partial<Record<Method, Need>>> = {
   '/forgot-password': { GET: 'anyone', POST: 'anyone' },
   '/reset-password/[token]': { GET: 'anyone', POST: 'anyone' },
   '/invitation/[token]': { GET: 'anyone', POST: 'anyone' },
+  '/bench': { GET: 'deliverable:upload' },
   '/deliverables': { GET: 'deliverable:read' },
   '/deliverables/add': { GET: 'deliverable:upload' },
   '/deliverables/[id]': { GET: 'deliverable:read', POST: 'submission:create' },

@@ -75,11 +75,12 @@ export const browserTransport: UploadTransport = {
       'POST',
       '/api/v1/uploads',
       {
-        files: files.map(({ file, details }) => ({
+        files: files.map(({ file, details, benchFigures }) => ({
           fileName: file.name,
           byteSize: file.size,
           lastModifiedMs: file.lastModified,
           details,
+          benchFigures,
         })),
       },
       createUploadsResultSchema,

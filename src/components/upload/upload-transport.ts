@@ -5,11 +5,14 @@ import type {
   createUploadsResultSchema,
   DeliverableDetails,
 } from '@/domain/api/deliverables.ts';
+import type { BenchFigures } from '@/domain/bench-figures.ts';
 import type { SendableFile } from './upload-item.ts';
 
 export interface NewFile {
   file: SendableFile;
   details: DeliverableDetails;
+  /** What the bench measured of it before it was sent. */
+  benchFigures?: BenchFigures;
 }
 
 /** Everything that the queue does outside of itself. All may reject; `isFinal` says what must not be tried again. */
