@@ -128,10 +128,12 @@ export class ScalarCore implements Core {
   }
 
   #mix(values: Float64Array, factors: readonly number[], lane: number): void {
+    // As narrow as the samples that it is mixed of are kept.
+    const round = isWide(this.#options.encoding) ? (x: number) => x : Math.fround;
     let sum = 0;
-    for (let i = 0; i < this.#measured; i++) if (factors[i] !== 0) sum += factors[i] * values[i];
-    // As wide as the samples that it is mixed of are kept.
-    values[lane] = isWide(this.#options.encoding) ? sum : Math.fround(sum);
+    for (let i = 0; i < this.#measured; i++)
+      if (factors[i] !== 0) sum = round(sum + round(round(factors[i]) * values[i]));
+    values[lane] = sum;
   }
 
   /** One frame, by lane. */

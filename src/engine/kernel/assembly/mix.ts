@@ -12,18 +12,34 @@ export function factorsPointer(): usize {
 export function mix(frames: i32): void {
   for (let lane = measured; lane < lanes; lane++) {
     const mine = factors + <usize>((lane - measured) * measured * 8);
-    for (let i = filled; i < filled + frames; i += 2) {
-      let sum = f64x2.splat(0);
-      for (let from = 0; from < measured; from++) {
-        const factor = load<f64>(mine + <usize>(from * 8));
-        if (factor == 0) continue;
-        const x = wide
-          ? v128.load(wideRow(from) + ((<usize>i) << 3))
-          : f64x2.promote_low_f32x4(v128.load64_zero(row(from) + ((<usize>i) << 2)));
-        sum = f64x2.add(sum, f64x2.mul(f64x2.splat(factor), x));
-      }
-      if (wide) v128.store(wideRow(lane) + ((<usize>i) << 3), sum);
-      v128.store64_lane(row(lane) + ((<usize>i) << 2), f32x4.demote_f64x2_zero(sum), 0);
+    if (wide) mixWide(lane, mine, frames);
+    else mixNarrow(lane, mine, frames);
+  }
+}
+
+function mixNarrow(lane: i32, mine: usize, frames: i32): void {
+  const to = row(lane) + ((<usize>filled) << 2);
+  const bytes = (<usize>frames) << 2;
+  memory.fill(to, 0, bytes);
+  for (let from = 0; from < measured; from++) {
+    const factor = <f32>load<f64>(mine + <usize>(from * 8));
+    if (factor == 0) continue;
+    const start = row(from) + ((<usize>filled) << 2);
+    const by = f32x4.splat(factor);
+    for (let i: usize = 0; i < bytes; i += 16)
+      v128.store(to + i, f32x4.add(v128.load(to + i), f32x4.mul(by, v128.load(start + i))));
+  }
+}
+
+function mixWide(lane: i32, mine: usize, frames: i32): void {
+  for (let i = filled; i < filled + frames; i += 2) {
+    let sum = f64x2.splat(0);
+    for (let from = 0; from < measured; from++) {
+      const factor = load<f64>(mine + <usize>(from * 8));
+      if (factor == 0) continue;
+      sum = f64x2.add(sum, f64x2.mul(f64x2.splat(factor), v128.load(wideRow(from) + ((<usize>i) << 3))));
     }
+    v128.store(wideRow(lane) + ((<usize>i) << 3), sum);
+    v128.store64_lane(row(lane) + ((<usize>i) << 2), f32x4.demote_f64x2_zero(sum), 0);
   }
 }
