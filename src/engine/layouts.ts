@@ -1,29 +1,31 @@
 /** Audio-channel layouts and their weights: 1.41 where |elevation| < 30 and 60 <= |azimuth| <= 120 degrees, else 1.0; LFE 0 (BS.1770-5 Annex 3, Table 4). */
 
 /** Loudspeaker labels as the trade writes them; in 7.1 the sides are Lss/Rss and the rears Lrs/Rrs. */
-export type Speaker =
-  | 'M'
-  | 'L'
-  | 'R'
-  | 'C'
-  | 'LFE'
-  | 'Ls'
-  | 'Rs'
-  | 'Lss'
-  | 'Rss'
-  | 'Lrs'
-  | 'Rrs'
-  | 'Cs'
-  | 'Lc'
-  | 'Rc'
-  | 'Ltf'
-  | 'Rtf'
-  | 'Ltr'
-  | 'Rtr'
-  | 'Ctf'
-  | 'Ctr'
-  | 'Tc'
-  | 'unknown';
+export const speakers = [
+  'M',
+  'L',
+  'R',
+  'C',
+  'LFE',
+  'Ls',
+  'Rs',
+  'Lss',
+  'Rss',
+  'Lrs',
+  'Rrs',
+  'Cs',
+  'Lc',
+  'Rc',
+  'Ltf',
+  'Rtf',
+  'Ltr',
+  'Rtr',
+  'Ctf',
+  'Ctr',
+  'Tc',
+  'unknown',
+] as const;
+export type Speaker = (typeof speakers)[number];
 
 const beside = new Set<Speaker>(['Ls', 'Rs', 'Lss', 'Rss']);
 
