@@ -12,6 +12,7 @@ import { chosenSpecs, type BenchSpec } from './bench-specs.ts';
 import { heldAgainst } from './bench-verdicts.ts';
 import { benchColumns, type BenchRow } from './columns.tsx';
 import { DropSlip } from './DropSlip.tsx';
+import { SpecsAhead } from './SpecsAhead.tsx';
 import type { Handover } from './HandedOver.tsx';
 import { useBench } from './use-bench.ts';
 
@@ -41,9 +42,10 @@ export function Bench({ specs, search, handover }: Props) {
   const heading = useRef<HTMLHeadingElement>(null);
   const against = params.get('against');
   const chosen = useMemo(() => chosenSpecs(specs, against), [specs, against]);
+  const several = chosen.length > 1;
   const columns = useMemo(
-    () => benchColumns({ onStop: (id) => queue.cancel(id), onAgain: (id) => queue.again(id) }),
-    [queue],
+    () => benchColumns({ onStop: (id) => queue.cancel(id), onAgain: (id) => queue.again(id) }, several),
+    [queue, several],
   );
 
   const rows = items.map((item): BenchRow => ({
@@ -83,6 +85,7 @@ export function Bench({ specs, search, handover }: Props) {
           <Notice>{said}</Notice>
         </div>
       )}
+      {items.length === 0 && <SpecsAhead specs={specs} />}
       {items.length > 0 && (
         <>
           <div className="mb-2 flex flex-wrap items-center gap-x-4 gap-y-2">

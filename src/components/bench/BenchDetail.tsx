@@ -11,8 +11,9 @@ import { engineVersion } from '@/engine/figures.ts';
 import type { BenchItem } from './bench-queue.ts';
 import type { BenchSpec } from './bench-specs.ts';
 import { benchPassage, verdictOf } from './bench-verdicts.ts';
-import { formatText } from './columns.tsx';
+import { formatText, quiet } from './columns.tsx';
 import type { BenchResult } from './crew.ts';
+import { saveFigures } from './figures-file.ts';
 
 interface Props {
   item: BenchItem & { result: BenchResult };
@@ -34,6 +35,13 @@ export function BenchDetail({ item, specs, spec, onSpec, heading }: Props) {
           {item.file.name}
         </h2>
         <span className="text-muted">{formatText(item)}</span>
+        <button
+          type="button"
+          className={`ml-auto text-[12.5px] ${quiet}`}
+          onClick={() => saveFigures(item.file.name, item.result)}
+        >
+          Save the figures as JSON
+        </button>
       </div>
       {preview && (
         <div className="mt-2">
@@ -52,9 +60,10 @@ export function BenchDetail({ item, specs, spec, onSpec, heading }: Props) {
           <span className="text-[12.5px] text-muted">{[spec.by, spec.use].filter(Boolean).join('; ')}</span>
         </div>
         <RulesTable verdict={verdict} />
-        {spec.body.source?.note && (
-          <p className="my-2 max-w-4xl text-[12.5px] text-muted">{spec.body.source.note}</p>
-        )}
+        <div className="my-2 grid gap-x-8 gap-y-2 md:grid-cols-2">
+          {spec.body.source?.note && <p className="text-[12.5px] text-muted">{spec.body.source.note}</p>}
+          <VerdictCaution />
+        </div>
       </div>
       <div className="mt-5 grid grid-cols-[minmax(0,1fr)] gap-5 lg:grid-cols-[minmax(0,1fr)_372px]">
         <BenchPassage key={`${item.id}/${spec.id}`} item={item} spec={spec} />
@@ -65,7 +74,6 @@ export function BenchDetail({ item, specs, spec, onSpec, heading }: Props) {
             byteSize={item.file.size}
             sha256={null}
           />
-          <VerdictCaution />
         </div>
       </div>
     </section>
@@ -84,10 +92,12 @@ function SpecLine({
       <button
         type="button"
         aria-pressed={current}
-        className="grid w-full grid-cols-[88px_minmax(0,1fr)] items-baseline gap-x-2 px-2 py-2 text-left hover:bg-pick aria-pressed:bg-sheet aria-pressed:shadow-[inset_3px_0_0_var(--teal)]"
+        className="grid w-full grid-cols-[88px_minmax(0,1fr)] items-start gap-x-2 px-2 py-2 text-left hover:bg-pick aria-pressed:bg-sheet aria-pressed:shadow-[inset_3px_0_0_var(--teal)]"
         onClick={() => onSpec(spec.id)}
       >
-        <VerdictMark outcome={verdict.outcome} />
+        <span className="pt-[3px]">
+          <VerdictMark outcome={verdict.outcome} />
+        </span>
         <span className="min-w-0">
           <span className={current ? 'font-semibold' : ''}>{spec.name}</span>
           <span className={`block text-[12.5px] ${outcomeTone(verdict.outcome)}`}>{verdict.nearestText}</span>

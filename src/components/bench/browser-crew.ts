@@ -7,6 +7,8 @@ import type { WorkerAnswer, WorkerAsk } from './measure-worker.ts';
 
 const makeWorker = () => new Worker(new URL('./measure-worker.ts', import.meta.url), { type: 'module' });
 
+const warmed = 4;
+
 export class BrowserCrew implements Crew {
   // A browser that hides its cores has at least two.
   readonly size = typeof navigator === 'undefined' ? 1 : navigator.hardwareConcurrency || 2;
@@ -14,9 +16,9 @@ export class BrowserCrew implements Crew {
   /** One decoded file in memory at a time. */
   private decoding: Promise<unknown> = Promise.resolve();
 
-  /** Starts a worker ahead of the first file, so that its program is there when the file is. */
+  /** Starts workers ahead of the first files, so that nothing is fetched once there are some; further ones come from the browser's cache. */
   warm(): void {
-    if (this.idle.length === 0) this.idle.push(makeWorker());
+    while (this.idle.length < Math.min(this.size, warmed)) this.idle.push(makeWorker());
   }
 
   async measure(file: File, options: CrewOptions): Promise<BenchResult> {

@@ -28,7 +28,8 @@ export const formatText = (item: BenchItem): string => {
   const format = item.result?.measured.measurement.format;
   if (!format) return formatBytes(item.file.size);
   const depth = format.bitDepth === null ? '' : `, ${format.bitDepth} bit`;
-  return `${format.container}, ${formatRate(format.sampleRateHz)}${depth}, ${format.layout}`;
+  const preview = item.result?.preview ? ', preview' : '';
+  return `${format.container}, ${formatRate(format.sampleRateHz)}${depth}, ${format.layout}${preview}`;
 };
 
 function progressText({ state, secondsDone, secondsTotal }: BenchItem): string {
@@ -42,7 +43,7 @@ function Standing({ row: { item, held } }: { row: BenchRow }) {
     case 'measured':
       return <VerdictMark outcome={held[0]?.verdict.outcome ?? 'not_judged'} />;
     case 'unreadable':
-      return <span className="font-semibold text-hull">No figures</span>;
+      return <span className="font-semibold whitespace-nowrap text-hull">No figures</span>;
     case 'stopped':
       return <span className="text-muted">Stopped</span>;
     default:
@@ -61,24 +62,69 @@ function Standing({ row: { item, held } }: { row: BenchRow }) {
   }
 }
 
+/** The worst rule and its margin, or why there are no figures. */
+function Nearest({ row: { item, held } }: { row: BenchRow }) {
+  if (item.message)
+    return (
+      <span className="block max-w-md py-1 text-[12.5px] leading-tight whitespace-normal text-hull">
+        {item.message}
+      </span>
+    );
+  if (held.length === 0) return null;
+  const { outcome, nearestText } = held[0].verdict;
+  return (
+    <span className={`line-clamp-2 max-w-52 leading-tight md:whitespace-normal ${outcomeTone(outcome)}`}>
+      {nearestText}
+    </span>
+  );
+}
+
 const figures = ({ item }: BenchRow) => item.result?.measured.measurement.figures;
 
-export const benchColumns = ({ onStop, onAgain }: RowActs): ColumnDef<BenchRow, unknown>[] => [
+const specColumn: ColumnDef<BenchRow, unknown> = {
+  id: 'spec',
+  header: 'Spec of',
+  meta: { from: 'lg' },
+  cell: ({ row: { original: row } }) =>
+    row.held[0] && (
+      <span className="line-clamp-2 max-w-48 leading-tight whitespace-normal text-muted">
+        {row.held[0].spec.name}
+        {row.held.length > 1 && <span className="text-[12.5px]"> +{row.held.length - 1}</span>}
+      </span>
+    ),
+};
+
+/** `several`: the verdict is the worst of several specs, so the row says of which. */
+export const benchColumns = (
+  { onStop, onAgain }: RowActs,
+  several: boolean,
+): ColumnDef<BenchRow, unknown>[] => [
   { id: 'verdict', header: 'Verdict', cell: ({ row: { original: row } }) => <Standing row={row} /> },
   {
     id: 'file',
     header: 'File',
     cell: ({ row: { original: row } }) => (
-      <span className="num block text-[12.5px] break-all md:max-w-64 md:truncate" title={row.item.file.name}>
-        {row.item.file.name}
-      </span>
+      <>
+        <span
+          className="num block text-[12.5px] break-all md:max-w-64 md:truncate"
+          title={row.item.file.name}
+        >
+          {row.item.file.name}
+        </span>
+        {/* In a hand the two share a column. */}
+        <span className="block pb-1 sm:hidden">
+          <Nearest row={row} />
+        </span>
+      </>
     ),
   },
   {
     id: 'format',
     header: 'Format',
     meta: { from: 'xl' },
-    cell: ({ row: { original: row } }) => <span className="text-muted">{formatText(row.item)}</span>,
+    cell: ({ row: { original: row } }) => (
+      <span className="whitespace-nowrap text-muted">{formatText(row.item)}</span>
+    ),
   },
   {
     id: 'length',
@@ -131,33 +177,10 @@ export const benchColumns = ({ onStop, onAgain }: RowActs): ColumnDef<BenchRow, 
   {
     id: 'nearest',
     header: 'Nearest limit',
-    cell: ({ row: { original: row } }) =>
-      row.item.message ? (
-        <span className="block max-w-md py-1 text-[12.5px] leading-tight whitespace-normal text-hull">
-          {row.item.message}
-        </span>
-      ) : (
-        row.held[0] && (
-          <span
-            className={`line-clamp-2 max-w-52 leading-tight md:whitespace-normal ${outcomeTone(row.held[0].verdict.outcome)}`}
-          >
-            {row.held[0].verdict.nearestText}
-          </span>
-        )
-      ),
+    meta: { from: 'sm' },
+    cell: ({ row: { original: row } }) => <Nearest row={row} />,
   },
-  {
-    id: 'spec',
-    header: 'Spec of',
-    meta: { from: 'lg' },
-    cell: ({ row: { original: row } }) =>
-      row.held[0] && (
-        <span className="line-clamp-2 max-w-48 leading-tight whitespace-normal text-muted">
-          {row.held[0].spec.name}
-          {row.held.length > 1 && <span className="text-[12.5px]"> +{row.held.length - 1}</span>}
-        </span>
-      ),
-  },
+  ...(several ? [specColumn] : []),
   {
     id: 'acts',
     header: () => <span className="sr-only">Acts</span>,

@@ -1,7 +1,7 @@
-import type { Encoding } from '@/engine/containers/samples.ts';
-import type { AudioFormat, Finding } from '@/engine/figures.ts';
-import { layoutOfCount, type Layout } from '@/engine/layouts.ts';
-import type { FrameWindow, SampleSource } from '@/engine/source.ts';
+import type { Encoding } from '../../engine/containers/samples.ts';
+import type { AudioFormat, Finding } from '../../engine/figures.ts';
+import { layoutOfCount, type Layout } from '../../engine/layouts.ts';
+import type { FrameWindow, SampleSource } from '../../engine/source.ts';
 
 /** What a browser's decoder gave: one array of samples per audio channel. */
 export interface DecodedAudio {

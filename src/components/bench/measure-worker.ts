@@ -1,7 +1,8 @@
 /** Web Worker: measures one file at a time by the engine that the service runs. Nothing leaves it but what it answers. */
-import { openNative } from '@/engine/containers/open.ts';
-import { measure, type Measured } from '@/engine/measure.ts';
-import { UnreadableError, type SampleSource } from '@/engine/source.ts';
+// Vite builds a worker without the site's alias, so what it is made of is imported by relative paths.
+import { openNative } from '../../engine/containers/open.ts';
+import { measure, type Measured } from '../../engine/measure.ts';
+import { UnreadableError, type SampleSource } from '../../engine/source.ts';
 import { DecodedSource, type DecodedAudio } from './decoded-source.ts';
 import { fileBytes } from './file-bytes.ts';
 

@@ -15,6 +15,7 @@ export function useBench(): { queue: BenchQueue; items: readonly BenchItem[] } {
     // All that measuring needs is fetched before the first file, so that nothing is asked of the network while one is measured.
     crew.warm();
     void import('chartjs-plugin-zoom');
+    void document.fonts.load('1em "Sometype Mono Variable"');
   }, [crew]);
   const busy = items.some(
     ({ state }) => state === 'waiting' || state === 'decoding' || state === 'measuring',

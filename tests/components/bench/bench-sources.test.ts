@@ -45,6 +45,40 @@ describe('a file read in slices', () => {
   });
 });
 
+describe('bytes of a file', () => {
+  const bytes = Uint8Array.from({ length: 3_000_000 }, (_, i) => (i * 7919) >> 5);
+  // Offset and length: heads, a run through, a jump back, past the end.
+  const reads = [
+    [0, 12],
+    [2_999_990, 100],
+    [44, 1_000_000],
+    [1_000_044, 1_000_000],
+    [10, 20],
+    [2_000_044, 1_000_000],
+    [3_000_000, 1_000_000],
+    [500, 400_000],
+    [400_500, 16],
+    [400_516, 300_000],
+  ];
+  it('are those that lie there, in whatever order they are asked for, into a given buffer or not', async () => {
+    const source = fileBytes(new Blob([bytes]));
+    const into = new Uint8Array(1_000_000);
+    for (const [offset, length] of reads)
+      for (const given of [undefined, into])
+        expect(
+          Buffer.compare(await source.read(offset, length, given), bytes.slice(offset, offset + length)),
+        ).toBe(0);
+  });
+
+  it('are the same where several ask at once', async () => {
+    const source = fileBytes(new Blob([bytes]));
+    const answers = await Promise.all(reads.map(([offset, length]) => source.read(offset, length)));
+    reads.forEach(([offset, length], i) =>
+      expect(Buffer.compare(answers[i], bytes.slice(offset, offset + length))).toBe(0),
+    );
+  });
+});
+
 describe('what a browser decoded', () => {
   it('measures as the same samples in a float WAV file do, and is cut by a window as that is', async () => {
     const path = await encode('float.wav', '-c:a', 'pcm_f32le');
