@@ -47,16 +47,18 @@ function mayPass(scope: MemberScope | null, need: Need | undefined): boolean {
 }
 
 /** The build knows its scripts' hashes; where storage is, for parts to go and sound to come from, is known at run time only. */
-function withStorage(policy: string): string {
+function withStorage(policy: string, routePattern: string): string {
   const storage = new URL(config().S3_PUBLIC_ENDPOINT).origin;
-  const parts = [policy.replace(/;\s*$/, ''), `connect-src 'self' ${storage}`, `media-src 'self' ${storage}`];
+  // The visitors' bench promises that nothing is sent: it may not connect to anything.
+  const connect = routePattern === '/' ? "'none'" : `'self' ${storage}`;
+  const parts = [policy.replace(/;\s*$/, ''), `connect-src ${connect}`, `media-src 'self' ${storage}`];
   // Positions that React writes as style attributes.
   return [...parts, "style-src-attr 'unsafe-inline'"].join('; ');
 }
 
-function secured(response: Response): Response {
+function secured(response: Response, routePattern: string): Response {
   const policy = response.headers.get('content-security-policy');
-  if (policy) response.headers.set('content-security-policy', withStorage(policy));
+  if (policy) response.headers.set('content-security-policy', withStorage(policy, routePattern));
   response.headers.set('x-content-type-options', 'nosniff');
   if (!response.headers.has('referrer-policy')) response.headers.set('referrer-policy', 'same-origin');
   response.headers.set('x-frame-options', 'DENY');
@@ -105,6 +107,6 @@ export const onRequest: MiddlewareHandler = (context, next) => {
   context.locals.scope = null;
   const userAgent = context.request.headers.get('user-agent') ?? '';
   return withRequestOrigin({ address: context.clientAddress, userAgent }, async () =>
-    secured(await answer(context, next)),
+    secured(await answer(context, next), context.routePattern),
   );
 };

@@ -36,6 +36,9 @@ const server = createServer((req, res) => {
     return refuse(res, 413, 'This request is larger than anything this address takes.');
   res.setHeader('x-content-type-options', 'nosniff');
   res.setHeader('cross-origin-opener-policy', 'same-origin');
+  // A worker is under the policy of its own answer, not its page's: the one that measures may not connect to anything.
+  if (req.url?.startsWith('/_astro/measure-worker'))
+    res.setHeader('content-security-policy', "default-src 'none'; script-src 'self' 'wasm-unsafe-eval'");
   handler(req, res);
 });
 server.on('connection', (socket) => {
