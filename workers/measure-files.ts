@@ -2,6 +2,9 @@
 import { UnreadableError, measureFile } from '../src/server/measuring/measure-source.ts';
 import type { Measurement } from '../src/engine/figures.ts';
 
+// Figures go to standard output, and nothing else does.
+process.env.LOG_LEVEL ??= 'silent';
+
 interface Line {
   file: string;
   measurement: Measurement | null;

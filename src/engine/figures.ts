@@ -14,9 +14,22 @@ export interface AudioFormat {
   bitDepth: number | null;
   /** Audio channels of the file. */
   channels: number;
-  /** 'mono', 'stereo', '3.0', '5.0', '5.1', '7.1', '5.1.4', '7.1.4', or 'N channels' where the file does not say. */
+  /** 'mono', 'stereo', '3.0', '5.0', '5.1', '7.1', '5.1.4', '7.1.4', or 'N channels' where the file does not say; of one presentation, its own. */
   layout: string;
   durationSeconds: number;
+  /** Of a coded stream; `null` for samples stored as they are. */
+  bitRateKbps?: number | null;
+  /** Every audio stream, where the file has several. */
+  streams?: AudioStream[];
+}
+
+/** One audio stream of a container that holds several. */
+export interface AudioStream {
+  codec: string;
+  channels: number;
+  layout: string;
+  language: string | null;
+  title: string | null;
 }
 
 /** Something about the file that a person should know; codes are stable and may be rules of a spec. */

@@ -46,5 +46,6 @@ export type UnreadableCode =
   | 'header-broken'
   | 'codec-unknown'
   | 'no-samples'
+  | 'no-such-stream'
   | 'decoder-failed'
   | 'decoder-too-slow';

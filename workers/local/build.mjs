@@ -70,6 +70,9 @@ export async function build({ force = false } = {}) {
     platform: 'node',
     target: 'node20',
     format: 'esm',
+    // What is imported late is loaded late.
+    splitting: true,
+    chunkNames: 'parts/[name]-[hash]',
     packages: 'external',
     sourcemap: true,
     absWorkingDir: root,

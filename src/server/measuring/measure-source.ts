@@ -1,12 +1,10 @@
 /** Measures a file wherever its bytes lie: natively from byte ranges, or staged on scratch disk and decoded. */
 import { mkdtemp, open, rm } from 'node:fs/promises';
 import { tmpdir } from 'node:os';
-import { join } from 'node:path';
+import { join, resolve } from 'node:path';
 import { openNative } from '../../engine/containers/open.ts';
 import { measure, type MeasureOptions } from '../../engine/measure.ts';
 import type { ByteSource } from '../../engine/source.ts';
-import { DecodedSource } from './decoded-source.ts';
-import { probe } from './probe.ts';
 
 export { UnreadableError } from '../../engine/source.ts';
 
@@ -21,30 +19,21 @@ async function measureFrom(
 ) {
   const native = await openNative(bytes);
   if (native) return measure(native, options);
+  // Only here: what is read natively need not wait for the decoder's modules.
+  const [{ DecodedSource }, { probe }, { stage }] = await Promise.all([
+    import('./decoded-source.ts'),
+    import('./probe.ts'),
+    import('./staging.ts'),
+  ]);
   const signal = options.signal ?? neverAborted;
-  if (path !== null) return measure(new DecodedSource(path, await probe(path, signal)), options);
   const folder = await mkdtemp(join(scratchDir, 'plimsoll-'));
   try {
-    const staged = join(folder, 'input');
-    await stage(bytes, staged, signal);
-    return await measure(new DecodedSource(staged, await probe(staged, signal)), options);
+    const local = path === null ? join(folder, 'input') : resolve(path);
+    if (path === null) await stage(bytes, local, signal);
+    const probed = await probe(local, signal, options.plan?.stream);
+    return await measure(new DecodedSource(local, probed, folder), options);
   } finally {
     await rm(folder, { recursive: true, force: true });
-  }
-}
-
-async function stage(bytes: ByteSource, path: string, signal: AbortSignal): Promise<void> {
-  const file = await open(path, 'wx', 0o600);
-  try {
-    for (let at = 0; at < bytes.size;) {
-      signal.throwIfAborted();
-      const piece = await bytes.read(at, 4 * 1024 ** 2);
-      if (piece.length === 0) throw new Error(`The source ended at ${at} of ${bytes.size} bytes`);
-      await file.writeFile(piece);
-      at += piece.length;
-    }
-  } finally {
-    await file.close();
   }
 }
 

@@ -2,15 +2,13 @@
 import { execFile } from 'node:child_process';
 import { promisify } from 'node:util';
 import { z } from 'zod';
-import type { AudioFormat } from '../../engine/figures.ts';
+import type { AudioFormat, AudioStream } from '../../engine/figures.ts';
 import { layoutOfDecoder, type Layout } from '../../engine/layouts.ts';
 import { UnreadableError } from '../../engine/source.ts';
+import { jailed } from './jail.ts';
 
 const run = promisify(execFile);
 const probeSeconds = 60;
-
-/** The jail of both programs: only local files and pipes, nothing read from a terminal. */
-export const jail = ['-v', 'error', '-protocol_whitelist', 'file,pipe'];
 
 const digits = z.coerce.number().optional().catch(undefined);
 const probeSchema = z.object({
@@ -26,6 +24,8 @@ const probeSchema = z.object({
         bits_per_raw_sample: digits,
         bits_per_sample: digits,
         duration: digits,
+        bit_rate: digits,
+        tags: z.record(z.string(), z.string()).default({}),
       }),
     )
     .default([]),
@@ -33,10 +33,24 @@ const probeSchema = z.object({
     .object({
       format_name: z.string().default(''),
       duration: digits,
+      bit_rate: digits,
       tags: z.record(z.string(), z.string()).default({}),
     })
     .default({ format_name: '', tags: {} }),
 });
+
+type Stream = z.infer<typeof probeSchema>['streams'][number];
+const streamFacts = (stream: Stream): AudioStream => ({
+  codec: codecName(stream.codec_name ?? ''),
+  channels: stream.channels ?? 0,
+  layout: layoutOfDecoder(stream.channel_layout, stream.channels ?? 0).name,
+  // 'und': the container's word for not saying.
+  language: stream.tags.language && stream.tags.language !== 'und' ? stream.tags.language : null,
+  title: stream.tags.title ?? stream.tags.handler_name ?? null,
+});
+
+const codecName = (name: string): string =>
+  name.startsWith('pcm_f') ? 'PCM float' : name.startsWith('pcm_') ? 'PCM' : (codecs[name] ?? name);
 
 export interface Probe {
   format: AudioFormat;
@@ -66,12 +80,15 @@ function containerOf(name: string, brand: string): string {
   return first === 'matroska' ? 'Matroska' : first.toUpperCase();
 }
 
-/** Reads the facts of the first audio stream. Throws UnreadableError, or the system's error where ffprobe is missing. */
-export async function probe(path: string, signal: AbortSignal): Promise<Probe> {
-  const args = [...jail, '-print_format', 'json', '-show_format', '-show_streams', '-i', path];
+/** Reads the facts of an audio stream, counted from 0 among those of the file. Throws UnreadableError, or the system's error where ffprobe is missing. */
+export async function probe(path: string, signal: AbortSignal, wanted = 0): Promise<Probe> {
+  const { command, args, env } = await jailed('ffprobe', [
+    ...['-print_format', 'json', '-show_format', '-show_streams', '-i', path],
+  ]);
   let text: string;
   try {
-    ({ stdout: text } = await run('ffprobe', args, {
+    ({ stdout: text } = await run(command, args, {
+      env,
       signal,
       timeout: probeSeconds * 1000,
       maxBuffer: 8 * 1024 ** 2,
@@ -84,7 +101,13 @@ export async function probe(path: string, signal: AbortSignal): Promise<Probe> {
     );
   }
   const { streams, format } = probeSchema.parse(JSON.parse(text));
-  const stream = streams.find((s) => s.codec_type === 'audio');
+  const sounding = streams.filter((s) => s.codec_type === 'audio');
+  if (sounding.length > 0 && wanted >= sounding.length)
+    throw new UnreadableError(
+      'no-such-stream',
+      `The file has ${sounding.length} audio ${sounding.length === 1 ? 'track' : 'tracks'}; number ${wanted + 1} is not among them.`,
+    );
+  const stream = sounding[wanted];
   if (!stream) {
     const found =
       streams.length > 0
@@ -105,16 +128,14 @@ export async function probe(path: string, signal: AbortSignal): Promise<Probe> {
   return {
     format: {
       container: containerOf(format.format_name, format.tags.major_brand ?? ''),
-      codec: pcm
-        ? stream.codec_name.startsWith('pcm_f')
-          ? 'PCM float'
-          : 'PCM'
-        : (codecs[stream.codec_name] ?? stream.codec_name),
+      codec: codecName(stream.codec_name),
       sampleRateHz,
       bitDepth: stream.bits_per_raw_sample || stream.bits_per_sample || null,
       channels,
       layout: layout.name,
       durationSeconds: duration ?? 0,
+      bitRateKbps: pcm ? null : Math.round((stream.bit_rate ?? format.bit_rate ?? 0) / 1000) || null,
+      ...(sounding.length > 1 && { streams: sounding.map(streamFacts) }),
     },
     layout,
     streamIndex: stream.index,

@@ -1,0 +1,39 @@
+/** Puts a file on scratch disk, where a decoder can seek in it. */
+import { open, statfs } from 'node:fs/promises';
+import { dirname } from 'node:path';
+import type { ByteSource } from '../../engine/source.ts';
+
+const pieceBytes = 4 * 1024 ** 2;
+/** What is left free for everybody else. */
+const spareBytes = 256 * 1024 ** 2;
+
+/** The system's own error for a full disk, told before anything is written. */
+class NoRoomError extends Error {
+  override name = 'NoRoomError';
+  readonly code = 'ENOSPC';
+  readonly syscall = 'statfs';
+}
+
+/** Copies the whole source to `path`. Throws NoRoomError, the source's errors, the file system's, or the signal's reason. */
+export async function stage(bytes: ByteSource, path: string, signal: AbortSignal): Promise<void> {
+  const { bavail, bsize } = await statfs(dirname(path));
+  const free = bavail * bsize;
+  if (free < bytes.size + spareBytes)
+    throw new NoRoomError(
+      `Decoding needs ${megabytes(bytes.size + spareBytes)} MB of scratch space, ${megabytes(free)} MB are free. The file waits until there is room.`,
+    );
+  const file = await open(path, 'wx', 0o600);
+  try {
+    for (let at = 0; at < bytes.size;) {
+      signal.throwIfAborted();
+      const piece = await bytes.read(at, pieceBytes);
+      if (piece.length === 0) throw new Error(`The source ended at ${at} of ${bytes.size} bytes`);
+      await file.writeFile(piece);
+      at += piece.length;
+    }
+  } finally {
+    await file.close();
+  }
+}
+
+const megabytes = (bytes: number) => Math.ceil(bytes / 1e6);
