@@ -34,9 +34,10 @@ function impliedRules(body: SpecBody): Rule[] {
 type Value = { figure: number } | { reason: string };
 const known = (figure: number | null, reason: string): Value => (figure === null ? { reason } : { figure });
 
-function valueOf(metric: RangeMetric, { figures, format }: Judged, body: SpecBody): Value {
+function valueOf(metric: RangeMetric, { figures }: Judged, body: SpecBody): Value {
   const { loudness, truePeak, samplePeak } = figures;
-  const mono = format.channels === 1 && body.mono === 'asDual';
+  // Of the presentation: the file may hold more audio channels.
+  const mono = truePeak.perChannelDbtp.length === 1 && body.mono === 'asDual';
   const integrated = mono ? (loudness.dualMonoIntegratedLufs ?? null) : loudness.integratedLufs;
   // Ungated figures of one channel heard on two stand 3.01 LU higher: twice the power.
   const dual = (value: number | null) => (value === null || !mono ? value : value + 10 * Math.log10(2));

@@ -69,5 +69,8 @@ export function misfitOf(
     return `The file has ${file.channels} audio channels; number ${beyond + 1} is not among them.`;
   if (plan.window && plan.window.startSeconds >= file.durationSeconds)
     return `The file lasts ${file.durationSeconds.toFixed(3)} s; the programme cannot begin at ${plan.window.startSeconds.toFixed(3)} s.`;
+  // What a frame of any rate rounds up to is no fault.
+  if (plan.window?.endSeconds != null && plan.window.endSeconds > file.durationSeconds + 0.05)
+    return `The file lasts ${file.durationSeconds.toFixed(3)} s; the programme cannot end at ${plan.window.endSeconds.toFixed(3)} s.`;
   return null;
 }

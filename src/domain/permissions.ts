@@ -94,6 +94,7 @@ export const routes: Record<string, Partial<Record<Method, Need>>> = {
   '/api/v1/events': { GET: 'signed-in' },
   '/api/v1/deliverables': { GET: 'deliverable:read', PATCH: 'deliverable:upload' },
   '/api/v1/deliverables/[id]': { GET: 'deliverable:read', DELETE: 'deliverable:upload' },
+  '/api/v1/deliverables/[id]/plan': { PUT: 'deliverable:upload' },
   '/api/v1/deliverables/[id]/passage': { GET: 'deliverable:read' },
   '/api/v1/deliverables/[id]/audio': { GET: 'deliverable:read' },
   '/api/v1/programmes': { GET: 'deliverable:read' },

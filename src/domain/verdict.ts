@@ -33,6 +33,8 @@ export const ruleVerdictSchema = z.object({
   neededTolerance: z.boolean(),
   /** Why it was not judged; `null` otherwise. */
   reason: z.string().nullable(),
+  /** In a verdict over several presentations: the one in which the rule ends like this. */
+  presentation: z.string().optional(),
 });
 export type RuleVerdict = z.infer<typeof ruleVerdictSchema>;
 

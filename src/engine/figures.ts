@@ -3,6 +3,8 @@
  * (too short for the window, below the gate), never -Infinity, NaN or 0.
  */
 
+import type { FrameRateName } from './timecode.ts';
+
 /** Facts of the file as read from its header or told by the decoder. */
 export interface AudioFormat {
   /** 'WAV', 'RF64', 'BW64', 'AIFF', 'AIFF-C', or the decoder's container name in capitals ('FLAC', 'MP3', 'MOV', 'MXF', 'OGG', 'MP4'). */
@@ -21,6 +23,23 @@ export interface AudioFormat {
   bitRateKbps?: number | null;
   /** Every audio stream, where the file has several. */
   streams?: AudioStream[];
+  /** Of the first sample, since midnight (bext). */
+  startTimeReferenceSamples?: number;
+  /** As timecode, where the file tells its frame rate too. */
+  startTimecode?: string;
+  frameRate?: FrameRateName;
+  /** By audio channel; empty where one has none (iXML). */
+  trackNames?: string[];
+  /** What the file says of its own loudness (bext, version 2). */
+  declaredLoudness?: DeclaredLoudness;
+}
+
+export interface DeclaredLoudness {
+  integratedLufs: number | null;
+  rangeLu: number | null;
+  truePeakDbtp: number | null;
+  momentaryMaxLufs: number | null;
+  shortTermMaxLufs: number | null;
 }
 
 /** One audio stream of a container that holds several. */

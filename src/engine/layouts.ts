@@ -89,7 +89,7 @@ const sameSet = (a: readonly Speaker[], b: readonly Speaker[]) =>
   a.length === b.length && a.every((s) => b.includes(s));
 
 /** A layout from speakers in file order; names it where it is one of the known. */
-function fromSpeakers(speakers: readonly Speaker[]): Layout {
+export function fromSpeakers(speakers: readonly Speaker[]): Layout {
   const one = speakers.length === 1 && speakers[0] !== 'LFE';
   if (one) return { name: 'mono', speakers: ['M'], assumed: false };
   const name = Object.keys(named).find((key) => sameSet(named[key], speakers));

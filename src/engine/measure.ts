@@ -1,5 +1,6 @@
 /** One whole measurement: a source of frames in; figures, findings and series of each presentation out. */
 import type { Measurement, MeasurementSeries } from './figures.ts';
+import { fromSpeakers } from './layouts.ts';
 import { Meter, type Twin } from './meter.ts';
 import { wholeFile, wholeLayout, type MeasuringPlan, type Presentation } from './plan.ts';
 import { UnreadableError, type SampleSource } from './source.ts';
@@ -71,9 +72,17 @@ export async function measure(
     return {
       presentation,
       measurement: {
-        format: { ...format, durationSeconds: plan.window ? (source.secondsTotal ?? 0) : done / rate },
+        format: {
+          ...format,
+          layout: plan.presentations ? fromSpeakers(presentation.speakers).name : format.layout,
+          durationSeconds: plan.window ? (source.secondsTotal ?? 0) : done / rate,
+        },
         figures: { ...figures, windowStartSeconds: start },
-        findings: [...source.findings, ...findings],
+        findings: [
+          // Nothing is assumed where the plan says it.
+          ...source.findings.filter(({ code }) => !plan.presentations || code !== 'layout-assumed'),
+          ...findings,
+        ],
       },
       series,
     };

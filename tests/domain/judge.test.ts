@@ -114,6 +114,7 @@ describe('a rule of loudness or peaks', () => {
 describe('one channel', () => {
   const mono = measured({ integratedLufs: -19 }, { format: { channels: 1, layout: 'mono' } });
   mono.figures.loudness.dualMonoIntegratedLufs = -16;
+  mono.figures.truePeak.perChannelDbtp = [-3];
   const podcast = [
     integrated({ targetLufs: -16 }),
     limits('shortTermMaxLufs', null, -12),

@@ -225,5 +225,13 @@ export async function makeSubmission(
       decision_reason: given.reason ?? null,
     })
     .returning('id');
+  await db('submission_measurements').insert({
+    submission_id: row.id,
+    organisation_id: by.organisationId,
+    position: 1,
+    name: 'Full mix',
+    measurement_id: deliverable.measurementId,
+    verdict_id: to.verdictId,
+  });
   return row.id;
 }

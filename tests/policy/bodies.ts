@@ -9,6 +9,9 @@ const nextYear = () => new Date(Date.now() + 365 * 24 * 3600_000).toISOString();
 export const bodies: Record<string, Body> = {
   'POST /api/v1/me/organisation': (h, _, side) => ({ organisationId: h[side].id }),
   'PATCH /api/v1/deliverables': (h) => ({ items: [{ id: h.ids.spareDeliverable, versionLabel: 'v2' }] }),
+  'PUT /api/v1/deliverables/[id]/plan': () => ({
+    plan: { stream: 0, window: { startSeconds: 10, endSeconds: null }, presentations: null },
+  }),
   'POST /api/v1/uploads': (_, n) => ({
     files: [{ fileName: `mix_${n}.wav`, byteSize: 50_000_000, lastModifiedMs: n }],
   }),

@@ -6,6 +6,7 @@ import {
   submissionStateSchema,
 } from '../vocabulary.ts';
 import { excursionSchema, verdictBodySchema } from '../verdict.ts';
+import { measuringPlanSchema } from '../measuring-plan.ts';
 import { specBodySchema } from '../spec.ts';
 import { benchComparisonSchema, benchFiguresSchema } from '../bench-figures.ts';
 import { idSchema, itemResultSchema, listOf, momentSchema, pageQuerySchema, personSchema } from './common.ts';
@@ -18,6 +19,18 @@ export const formatSchema = z.object({
   channels: z.number().int(),
   layout: z.string(),
   durationSeconds: z.number(),
+  bitRateKbps: z.number().nullable().optional(),
+  streams: z
+    .array(
+      z.object({
+        codec: z.string(),
+        channels: z.number().int(),
+        layout: z.string(),
+        language: z.string().nullable(),
+        title: z.string().nullable(),
+      }),
+    )
+    .optional(),
 });
 const level = z.number().nullable();
 export const figuresSchema = z.object({
@@ -31,7 +44,11 @@ export const figuresSchema = z.object({
     shortTermMaxLufs: level,
     dualMonoIntegratedLufs: level.optional(),
   }),
-  truePeak: z.object({ maxDbtp: level, perChannelDbtp: z.array(level) }),
+  truePeak: z.object({
+    maxDbtp: level,
+    perChannelDbtp: z.array(level),
+    perChannelAtSeconds: z.array(level).optional(),
+  }),
   samplePeak: z.object({ maxDbfs: level, perChannelDbfs: z.array(level) }),
   times: z.object({
     momentaryMaxAtSeconds: level,
@@ -39,6 +56,8 @@ export const figuresSchema = z.object({
     truePeakMaxAtSeconds: level,
   }),
   measuredSeconds: z.number(),
+  windowStartSeconds: z.number().optional(),
+  downmix: z.object({ integratedLufs: level, truePeakDbtp: level }).optional(),
 });
 export const findingSchema = z.object({
   code: z.string(),
@@ -56,6 +75,20 @@ export const measurementSchema = z.object({
   measuringSeconds: z.number(),
   createdAt: momentSchema,
 });
+
+/** One presentation as it was measured. */
+export const measuredPresentationSchema = z.object({
+  /** From 1, in the plan's order. */
+  position: z.number().int(),
+  name: z.string(),
+  /** Audio channels of the file, from 0, and the loudspeaker that each feeds; none told: all of them, in order. */
+  audioChannels: z.array(z.number().int()),
+  speakers: z.array(z.string()),
+  measurement: measurementSchema,
+  /** Its own verdict under each spec version that judges the deliverable. */
+  verdicts: z.array(z.object({ specVersionId: idSchema, verdict: verdictBodySchema })),
+});
+export type MeasuredPresentation = z.infer<typeof measuredPresentationSchema>;
 
 /** A deliverable's standing with one channel that it is for. */
 export const channelVerdictSchema = z.object({
@@ -120,13 +153,40 @@ export const deliverableReportSchema = deliverableRowSchema.extend({
   sha256: z.string().nullable(),
   uploadedBy: personSchema,
   measuredAt: momentSchema.nullable(),
+  /** Of the first presentation; `null` while it is not measured by the plan that holds now. */
   measurement: measurementSchema.nullable(),
+  presentations: z.array(measuredPresentationSchema),
+  plan: measuringPlanSchema,
+  /** Frames a second by which its times are counted, where the file tells none. */
+  frameRate: z.string().nullable(),
+  /** Plans that it was ever given, newest first; the whole file, which needs none, is not among them. */
+  plans: z.array(
+    z.object({
+      plan: measuringPlanSchema,
+      createdBy: personSchema.nullable(),
+      createdAt: momentSchema,
+      isCurrent: z.boolean(),
+    }),
+  ),
+  /** Facts of the file as it was last measured by any plan, for choosing another one; `null` where it never was. */
+  knownFormat: formatSchema.nullable(),
   /** How it compares with what the bench measured before it was sent; `null` where no bench did. */
   bench: benchComparisonSchema.nullable(),
   specs: z.array(z.object({ specVersionId: idSchema, body: specBodySchema })),
   replaces: z.object({ id: idSchema, fileName: z.string() }).nullable(),
 });
 export type DeliverableReport = z.infer<typeof deliverableReportSchema>;
+
+/** How a deliverable is to be measured from now on. */
+export const setPlanSchema = z.object({
+  plan: measuringPlanSchema,
+  frameRate: z.string().max(20).nullable().default(null),
+});
+/** 'measuring': a job was made; 'known': it was measured so before, and those figures stand now; 'same': nothing changed. */
+export const setPlanResultSchema = z.object({
+  deliverable: deliverableRowSchema,
+  how: z.enum(['measuring', 'known', 'same']),
+});
 
 /** Details that many rows may be given at once; a title or label that does not exist yet is made. */
 export const deliverableDetailsSchema = z.object({
@@ -152,6 +212,8 @@ export const patchDeliverablesResultSchema = z.object({
  * there is no value. True peak in dBTP is the largest of the 100 ms. Excursions belong to the asked spec version.
  */
 export const passageSchema = z.object({
+  /** Where it begins in the file; its own times are counted from there. */
+  windowStartSeconds: z.number().optional(),
   stepSeconds: z.number(),
   shortTermLufs: z.array(level),
   momentaryLufs: z.array(level),
@@ -161,7 +223,11 @@ export const passageSchema = z.object({
 export type Passage = z.infer<typeof passageSchema>;
 
 /** The spec version whose limits the excursions are beyond: one that the deliverable was judged by. */
-export const passageQuerySchema = z.object({ specVersionId: idSchema.optional() });
+export const passageQuerySchema = z.object({
+  specVersionId: idSchema.optional(),
+  /** Place of the presentation, from 1. */
+  presentation: z.coerce.number().int().min(1).default(1),
+});
 
 export const programmesSchema = z.object({
   items: z.array(z.object({ id: idSchema, title: z.string(), episodes: z.array(z.string()) })),

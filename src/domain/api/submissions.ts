@@ -2,7 +2,13 @@ import { z } from 'zod';
 import { contentKindSchema, overallOutcomeSchema, submissionStateSchema } from '../vocabulary.ts';
 import { specBodySchema } from '../spec.ts';
 import { verdictBodySchema } from '../verdict.ts';
-import { figuresSchema, formatSchema, measurementSchema } from './deliverables.ts';
+import {
+  figuresSchema,
+  formatSchema,
+  measuredPresentationSchema,
+  measurementSchema,
+  passageQuerySchema,
+} from './deliverables.ts';
 import {
   idSchema,
   itemResultSchema,
@@ -65,7 +71,14 @@ export const submissionQuerySchema = pageQuerySchema.extend({
 
 export const submissionReportSchema = submissionRowSchema.extend({
   sha256: z.string(),
+  /** Of the first presentation. */
   measurement: measurementSchema,
+  /** Each presentation as it was frozen, with its own verdict; `verdict` of the row is over all of them. */
+  presentations: z.array(
+    measuredPresentationSchema.omit({ verdicts: true }).extend({ verdict: verdictBodySchema }),
+  ),
+  /** Frames a second by which its times are counted, where the file tells none. */
+  frameRate: z.string().nullable(),
   specBody: specBodySchema,
   specVersionId: idSchema,
   /** Verdict under the version now in force, where that is another one. */
@@ -96,6 +109,8 @@ export const submissionReportSchema = submissionRowSchema.extend({
     .nullable(),
 });
 export type SubmissionReport = z.infer<typeof submissionReportSchema>;
+
+export const submissionPassageQuerySchema = passageQuerySchema.pick({ presentation: true });
 
 export const createSubmissionsSchema = z.object({
   items: z

@@ -4,6 +4,7 @@ import { layoutOfCount, layoutOfMask } from '../layouts.ts';
 import { UnreadableError, type ByteSource } from '../source.ts';
 import { chunksOf, fourCc, type Chunk } from './chunks.ts';
 import { checkShape, dataExtent, layoutFindings } from './extent.ts';
+import { bextBytes, ixmlBytes, programmeFacts } from './programme-chunks.ts';
 import type { PcmLayout } from './pcm-source.ts';
 import type { Encoding } from './samples.ts';
 
@@ -90,6 +91,8 @@ export async function readWave(source: ByteSource): Promise<PcmLayout | null> {
   let sizes: Sizes64 | null = null;
   let format: Format | null = null;
   let data: Chunk | null = null;
+  let bext: Uint8Array | null = null;
+  let ixml: Uint8Array | null = null;
   const sizeOf = (id: string, size32: number) =>
     size32 !== unknownSize || !sizes ? size32 : id === 'data' ? sizes.data : (sizes.others.get(id) ?? size32);
   for await (const chunk of chunksOf(source, 12, true, sizeOf)) {
@@ -99,7 +102,12 @@ export async function readWave(source: ByteSource): Promise<PcmLayout | null> {
       format = readFormat(await source.read(chunk.offset, Math.min(chunk.size, 64)));
       if (!format) return null;
     } else if (chunk.id === 'data' && !data) data = chunk;
-    if (format && data) break;
+    else if (chunk.id === 'bext' && !bext)
+      bext = await source.read(chunk.offset, Math.min(chunk.size, bextBytes));
+    else if (chunk.id === 'iXML' && !ixml)
+      ixml = await source.read(chunk.offset, Math.min(chunk.size, ixmlBytes));
+    // What stands behind the samples is looked for only where the file goes on behind them.
+    if (format && data && bext && ixml) break;
   }
   if (!format)
     throw new UnreadableError('header-broken', 'The WAV header is broken: it has no format chunk.');
@@ -134,6 +142,7 @@ export async function readWave(source: ByteSource): Promise<PcmLayout | null> {
       channels: format.audioChannels,
       layout: layout.name,
       durationSeconds: frames / format.sampleRateHz,
+      ...programmeFacts(format.sampleRateHz, bext, ixml),
     },
     layout,
     findings: [...findings, ...layoutFindings(layout)],

@@ -1,4 +1,5 @@
 /** Writes to deliverables: arrival, the states of measuring, details. The read side is deliverables-repository. */
+import type { Knex } from 'knex';
 import type { ContentKind, DeliverableState } from '../../domain/vocabulary.ts';
 import type { Scope } from '../scope.ts';
 import type { Db } from './connection.ts';
@@ -17,6 +18,8 @@ export interface DeliverableCore {
   contentKind: ContentKind;
   programmeId: string | null;
   episodeId: string | null;
+  /** How it is measured; `null`: the whole file. */
+  planId: string | null;
 }
 
 interface CoreRow {
@@ -32,6 +35,7 @@ interface CoreRow {
   content_kind: ContentKind;
   programme_id: string | null;
   episode_id: string | null;
+  plan_id: string | null;
 }
 const coreColumns = [
   'id',
@@ -46,6 +50,7 @@ const coreColumns = [
   'content_kind',
   'programme_id',
   'episode_id',
+  'plan_id',
 ] as const;
 const toCore = (row: CoreRow): DeliverableCore => ({
   id: row.id,
@@ -60,6 +65,7 @@ const toCore = (row: CoreRow): DeliverableCore => ({
   contentKind: row.content_kind,
   programmeId: row.programme_id,
   episodeId: row.episode_id,
+  planId: row.plan_id,
 });
 
 /** A deliverable that was not discarded; undefined when the scope has none of that id. */
@@ -170,12 +176,26 @@ export async function takeFromTheDead(db: Db, scope: Scope, id: string): Promise
   return changed === 1;
 }
 
+/** A run ends its deliverable only while that is still to be measured, and by the plan that the run was made by. */
+const endedBy =
+  (scope: Scope, { id, planId }: Pick<DeliverableCore, 'id' | 'planId'>) =>
+  (query: Knex.QueryBuilder): void => {
+    query
+      .where('id', id)
+      .whereIn('state', ['waiting', 'measuring'])
+      .whereRaw('plan_id IS NOT DISTINCT FROM ?', [planId])
+      .modify(within(scope, 'organisation_id'));
+  };
+
 /** Ends as measured, from 'waiting' too (somebody else may have handed it back); false when it had ended already. */
-export async function markMeasured(db: Db, scope: Scope, id: string, sha256: string): Promise<boolean> {
+export async function markMeasured(
+  db: Db,
+  scope: Scope,
+  run: Pick<DeliverableCore, 'id' | 'planId'>,
+  sha256: string,
+): Promise<boolean> {
   const changed = await db('deliverables')
-    .where('id', id)
-    .whereIn('state', ['waiting', 'measuring'])
-    .modify(within(scope, 'organisation_id'))
+    .modify(endedBy(scope, run))
     .update({ state: 'measured', sha256, measured_at: db.fn.now() });
   return changed === 1;
 }
@@ -184,14 +204,12 @@ export async function markMeasured(db: Db, scope: Scope, id: string, sha256: str
 export async function markUnreadable(
   db: Db,
   scope: Scope,
-  id: string,
+  run: Pick<DeliverableCore, 'id' | 'planId'>,
   reason: { code: string; message: string },
   sha256: string | null,
 ): Promise<boolean> {
   const changed = await db('deliverables')
-    .where('id', id)
-    .whereIn('state', ['waiting', 'measuring'])
-    .modify(within(scope, 'organisation_id'))
+    .modify(endedBy(scope, run))
     .update({ state: 'unreadable', reason_code: reason.code, reason: reason.message, sha256 });
   return changed === 1;
 }

@@ -3,6 +3,7 @@ import type { Knex } from 'knex';
 import { z } from 'zod';
 import type { deliverableQuerySchema, ChannelVerdict } from '../../domain/api/deliverables.ts';
 import { figuresSchema, findingSchema, formatSchema } from '../../domain/api/deliverables.ts';
+import { overPresentations } from '../../domain/presentations-verdict.ts';
 import { verdictBodySchema } from '../../domain/verdict.ts';
 import type {
   ContentKind,
@@ -35,6 +36,10 @@ export interface DeliverableRecord {
   sha256: string | null;
   uploadedBy: { id: string; name: string };
   replaces: { id: string; fileName: string } | null;
+  /** How it is measured now; `null`: the whole file. */
+  planId: string | null;
+  /** Frames a second by which its times are counted, where the file tells none. */
+  frameRate: string | null;
   createdAt: Date;
   measuredAt: Date | null;
 }
@@ -68,6 +73,8 @@ interface Row {
   uploader_name: string;
   replaces_id: string | null;
   replaces_file_name: string | null;
+  plan_id: string | null;
+  frame_rate: string | null;
   created_at: Date;
   measured_at: Date | null;
   sort_key: string | null;
@@ -109,9 +116,9 @@ export const toMeasurement = (row: MeasurementColumns): MeasurementRecord => ({
 const worstOutcome = `(SELECT v.outcome FROM deliverable_channels dc JOIN verdicts v ON v.id = dc.verdict_id
   WHERE dc.deliverable_id = d.id ORDER BY array_position(ARRAY['fail', 'advisory', 'pass'], v.outcome) LIMIT 1)`;
 
-/** The newest measurement of the first presentation: the one that the row shows. */
-const newestMeasurement = `LEFT JOIN LATERAL (SELECT mm.* FROM measurements mm JOIN presentations pr ON pr.id = mm.presentation_id
-  WHERE mm.deliverable_id = d.id ORDER BY pr.position, mm.created_at DESC, mm.id DESC LIMIT 1) m ON true`;
+/** The measurement of the first presentation: the one that the row shows. */
+const firstMeasurement = `LEFT JOIN LATERAL (SELECT * FROM current_measurements WHERE deliverable_id = d.id
+  ORDER BY position LIMIT 1) m ON true`;
 
 const figure = (path: string) => `(m.figures #>> '{${path}}')::float8`;
 export const deliverableSortKeys: Record<z.infer<typeof deliverableQuerySchema>['sort'], SortKey> = {
@@ -202,6 +209,8 @@ const columns = [
   'd.sha256',
   'd.uploaded_by',
   'd.replaces_id',
+  'd.plan_id',
+  'd.frame_rate',
   'd.created_at',
   'd.measured_at',
   'p.title as programme_title',
@@ -214,7 +223,7 @@ const wholeRows = (db: Db, scope: Scope) =>
   deliverables(db, scope)
     .join('users as u', 'u.id', 'd.uploaded_by')
     .leftJoin('deliverables as r', 'r.id', 'd.replaces_id')
-    .joinRaw(newestMeasurement)
+    .joinRaw(firstMeasurement)
     .select(...columns, db.raw(`${worstOutcome} AS outcome`));
 
 type WholeRow = Row & (MeasurementColumns | { [K in keyof MeasurementColumns]: null });
@@ -239,6 +248,8 @@ const toDeliverable = (row: WholeRow): DeliverableRecord => ({
     row.replaces_id && row.replaces_file_name
       ? { id: row.replaces_id, fileName: row.replaces_file_name }
       : null,
+  planId: row.plan_id,
+  frameRate: row.frame_rate,
   createdAt: row.created_at,
   measuredAt: row.measured_at,
 });
@@ -286,7 +297,7 @@ interface ChannelRow {
   channel_name: string;
   distributor_name: string;
   verdict_id: string | null;
-  verdict: unknown;
+  verdicts: unknown;
   spec_version_id: string | null;
   spec_version_number: number | null;
   spec_name: string | null;
@@ -294,6 +305,7 @@ interface ChannelRow {
   submission_state: SubmissionState | null;
   submitted_at: Date | null;
 }
+export const presentationVerdictsSchema = z.array(z.object({ name: z.string(), verdict: verdictBodySchema }));
 const rank: Record<OverallOutcome, number> = { fail: 0, advisory: 1, pass: 2 };
 
 /** How each deliverable stands with the channels that it is for, worst first, then by name; by deliverable id. */
@@ -321,7 +333,11 @@ export async function listStandings(
       'c.name as channel_name',
       'o.name as distributor_name',
       'dc.verdict_id',
-      'v.body as verdict',
+      db.raw(
+        `(SELECT jsonb_agg(jsonb_build_object('name', m.presentation_name, 'verdict', x.body) ORDER BY m.position)
+          FROM current_measurements m JOIN verdicts x ON x.measurement_id = m.id AND x.spec_version_id = v.spec_version_id
+          WHERE m.deliverable_id = dc.deliverable_id) AS verdicts`,
+      ),
       'v.spec_version_id',
       'sv.number as spec_version_number',
       'sp.name as spec_name',
@@ -344,7 +360,8 @@ const toStanding = (row: ChannelRow): ChannelVerdict => ({
   specVersionId: row.spec_version_id,
   specVersionNumber: row.spec_version_number,
   verdictId: row.verdict_id,
-  verdict: row.verdict_id ? verdictBodySchema.parse(row.verdict) : null,
+  // None while it waits to be measured by another plan.
+  verdict: row.verdicts ? overPresentations(presentationVerdictsSchema.parse(row.verdicts)) : null,
   submission:
     row.submission_id && row.submission_state && row.submitted_at
       ? { id: row.submission_id, state: row.submission_state, submittedAt: row.submitted_at.toISOString() }

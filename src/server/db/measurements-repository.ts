@@ -1,26 +1,39 @@
 /** Measurements: written once, never changed. */
 import type { Measurement } from '../../engine/figures.ts';
+import type { Presentation } from '../../engine/plan.ts';
 import type { Scope } from '../scope.ts';
 import type { Db } from './connection.ts';
 
-/** The presentation of all audio channels of a file, made when it is not there. */
-export async function ensureWholeFilePresentation(
+/** The presentation at this place of a plan, made when it is not there. */
+export async function ensurePresentation(
   db: Db,
   _scope: Scope,
-  of: { organisationId: string; deliverableId: string; layout: string },
+  of: {
+    organisationId: string;
+    deliverableId: string;
+    /** `null`: the whole file. */
+    planId: string | null;
+    position: number;
+    presentation: Presentation;
+    layout: string;
+  },
 ): Promise<string> {
   await db('presentations')
     .insert({
       organisation_id: of.organisationId,
       deliverable_id: of.deliverableId,
-      position: 1,
-      name: 'Whole file',
+      plan_id: of.planId,
+      position: of.position,
+      name: of.presentation.name,
+      audio_channels: of.presentation.audioChannels,
+      speakers: of.presentation.speakers,
       layout: of.layout,
     })
-    .onConflict(['deliverable_id', 'position'])
+    .onConflict(['deliverable_id', 'plan_id', 'position'])
     .ignore();
   const row = await db('presentations')
-    .where({ deliverable_id: of.deliverableId, position: 1, organisation_id: of.organisationId })
+    .where({ deliverable_id: of.deliverableId, position: of.position, organisation_id: of.organisationId })
+    .whereRaw('plan_id IS NOT DISTINCT FROM ?', [of.planId])
     .first<{ id: string } | undefined>('id');
   if (!row) throw new Error(`Deliverable ${of.deliverableId} has no presentation and took none`);
   return row.id;

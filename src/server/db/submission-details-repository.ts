@@ -19,6 +19,7 @@ export interface SubmissionFreeze {
   specBody: SpecBody;
   storageKey: string;
   fileName: string;
+  frameRate: string | null;
 }
 
 export async function findSubmissionFreeze(
@@ -26,20 +27,27 @@ export async function findSubmissionFreeze(
   scope: Scope,
   id: string,
 ): Promise<SubmissionFreeze | null> {
-  const row: (MeasurementColumns & { body: unknown; storage_key: string; file_name: string }) | undefined =
-    await db('submissions as s')
-      .join('measurements as m', 'm.id', 's.measurement_id')
-      .join('spec_versions as sv', 'sv.id', 's.spec_version_id')
-      .join('deliverables as d', 'd.id', 's.deliverable_id')
-      .where('s.id', id)
-      .modify(ofEitherSide(scope))
-      .first(...measurementColumns, 'sv.body', 'd.storage_key', 'd.file_name');
+  const row:
+    | (MeasurementColumns & {
+        body: unknown;
+        storage_key: string;
+        file_name: string;
+        frame_rate: string | null;
+      })
+    | undefined = await db('submissions as s')
+    .join('measurements as m', 'm.id', 's.measurement_id')
+    .join('spec_versions as sv', 'sv.id', 's.spec_version_id')
+    .join('deliverables as d', 'd.id', 's.deliverable_id')
+    .where('s.id', id)
+    .modify(ofEitherSide(scope))
+    .first(...measurementColumns, 'sv.body', 'd.storage_key', 'd.file_name', 'd.frame_rate');
   if (!row) return null;
   return {
     measurement: toMeasurement(row),
     specBody: specBodySchema.parse(row.body),
     storageKey: row.storage_key,
     fileName: row.file_name,
+    frameRate: row.frame_rate,
   };
 }
 

@@ -10,6 +10,7 @@ export interface LockedDeliverable {
   organisationId: string;
   fileName: string;
   state: DeliverableState;
+  reasonCode: string | null;
   reason: string | null;
   programmeTitle: string | null;
   episodeLabel: string | null;
@@ -17,6 +18,7 @@ export interface LockedDeliverable {
   versionLabel: string;
   contentKind: ContentKind;
   replacesId: string | null;
+  planId: string | null;
   createdAt: Date;
 }
 
@@ -40,6 +42,7 @@ export async function lockDeliverable(
       organisationId: row.organisation_id,
       fileName: row.file_name,
       state: row.state,
+      reasonCode: row.reason_code,
       reason: row.reason,
       programmeTitle: row.programme_title,
       episodeLabel: row.episode_label,
@@ -47,6 +50,7 @@ export async function lockDeliverable(
       versionLabel: row.version_label,
       contentKind: row.content_kind,
       replacesId: row.replaces_id,
+      planId: row.plan_id,
       createdAt: row.created_at,
     }
   );
@@ -124,8 +128,10 @@ export async function findDeliveryChannel(
 }
 
 export interface JudgedForChannel {
+  /** The worst of all presentations. */
   verdictId: string;
   verdict: VerdictBody;
+  /** Of the first presentation. */
   measurementId: string;
   sha256: string;
   layout: string;
@@ -142,14 +148,16 @@ export async function findVerdictInForce(
   const row = await db('deliverable_channels as dc')
     .join('deliverables as d', 'd.id', 'dc.deliverable_id')
     .join('verdicts as v', 'v.id', 'dc.verdict_id')
-    .join('measurements as m', 'm.id', 'v.measurement_id')
+    .joinRaw(
+      'JOIN LATERAL (SELECT * FROM current_measurements WHERE deliverable_id = d.id ORDER BY position LIMIT 1) m ON true',
+    )
     .where({ 'dc.deliverable_id': deliverableId, 'dc.channel_id': channelId })
     .whereRaw('v.spec_version_id = spec_version_in_force(dc.channel_id, d.content_kind, now())')
     .modify(within(scope, 'dc.organisation_id'))
     .first(
       'v.id',
       'v.body',
-      'v.measurement_id',
+      'm.id as measurement_id',
       'v.spec_version_id',
       'm.sha256',
       db.raw(`m.format ->> 'layout' AS layout`),

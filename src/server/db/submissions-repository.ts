@@ -3,10 +3,12 @@ import type { Knex } from 'knex';
 import type { z } from 'zod';
 import { figuresSchema, formatSchema } from '../../domain/api/deliverables.ts';
 import type { submissionQuerySchema } from '../../domain/api/submissions.ts';
-import { verdictBodySchema, type VerdictBody } from '../../domain/verdict.ts';
+import { overPresentations } from '../../domain/presentations-verdict.ts';
+import type { VerdictBody } from '../../domain/verdict.ts';
 import type { ContentKind, OverallOutcome, SubmissionState } from '../../domain/vocabulary.ts';
 import type { Scope } from '../scope.ts';
 import type { Db } from './connection.ts';
+import { presentationVerdictsSchema } from './deliverables-repository.ts';
 import { containing, cutPage, naturalKey, pageByKey, type Cursor, type SortKey } from './keyset.ts';
 
 export interface PersonRef {
@@ -69,7 +71,7 @@ interface Row {
   measurement_id: string;
   format: unknown;
   figures: unknown;
-  verdict: unknown;
+  verdicts: unknown;
   air_at: Date | null;
   submitted_at: Date;
   submitted_by: string;
@@ -104,7 +106,7 @@ const toSubmission = (row: Row): SubmissionRecord => ({
   measurementId: row.measurement_id,
   format: formatSchema.parse(row.format),
   figures: figuresSchema.parse(row.figures),
-  verdict: verdictBodySchema.parse(row.verdict),
+  verdict: overPresentations(presentationVerdictsSchema.parse(row.verdicts)),
   airAt: row.air_at,
   submittedAt: row.submitted_at,
   submittedBy: { id: row.submitted_by, name: row.submitter_name },
@@ -215,7 +217,10 @@ const wholeRows = (db: Db, scope: Scope) =>
       'sv.number as spec_version_number',
       'm.format',
       'm.figures',
-      'v.body as verdict',
+      db.raw(
+        `(SELECT jsonb_agg(jsonb_build_object('name', sm.name, 'verdict', x.body) ORDER BY sm.position)
+          FROM submission_measurements sm JOIN verdicts x ON x.id = sm.verdict_id WHERE sm.submission_id = s.id) AS verdicts`,
+      ),
       'sb.name as submitter_name',
       'de.name as decider_name',
     );

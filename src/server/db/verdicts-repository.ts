@@ -13,7 +13,7 @@ export interface JudgingFilter {
   specIds?: string[];
 }
 
-/** A deliverable's standing with one channel whose verdict is not under the version now in force. */
+/** A deliverable's standing with one channel whose verdicts are not all under the version now in force. */
 export interface StaleStanding {
   organisationId: string;
   deliverableId: string;
@@ -23,8 +23,8 @@ export interface StaleStanding {
   /** `null` where no spec is in force (any more): nothing to be judged by. */
   specVersionId: string | null;
   specBody: SpecBody | null;
-  measurementId: string;
-  measurement: Pick<z.infer<typeof measurementRow>, 'format' | 'figures' | 'findings'>;
+  /** Of each presentation, in order. */
+  measurements: (z.infer<typeof measurementRow> & { id: string })[];
 }
 
 const measurementRow = z.object({
@@ -46,8 +46,14 @@ interface StaleRow {
   findings: unknown;
 }
 
+/** The version in force is not that of the verdict, or some presentation's measurement has no verdict under it. */
+const isStale = `v.spec_version_id IS DISTINCT FROM sv.id OR sv.id IS NOT NULL AND (
+  NOT EXISTS (SELECT FROM current_measurements c WHERE c.deliverable_id = d.id AND c.id = v.measurement_id)
+  OR EXISTS (SELECT FROM current_measurements c WHERE c.deliverable_id = d.id AND NOT EXISTS (
+    SELECT FROM verdicts x WHERE x.measurement_id = c.id AND x.spec_version_id = sv.id)))`;
+
 /**
- * Measured deliverables' standings to be judged anew, by their newest measurement. A spec owner's publishing reaches the
+ * Measured deliverables' standings to be judged anew, by the measurements that stand now. A spec owner's publishing reaches the
  * deliverables of every supplier of the channel, so a member's scope narrows only by its own organisation's deliverables or channels.
  */
 export async function listStaleStandings(
@@ -58,17 +64,13 @@ export async function listStaleStandings(
   const rows: StaleRow[] = await db('deliverable_channels as dc')
     .join('deliverables as d', 'd.id', 'dc.deliverable_id')
     .join('channels as c', 'c.id', 'dc.channel_id')
-    .joinRaw(
-      'JOIN LATERAL (SELECT id, format, figures, findings FROM measurements WHERE deliverable_id = d.id ORDER BY created_at DESC, id DESC LIMIT 1) m ON true',
-    )
+    .joinRaw('JOIN LATERAL (SELECT * FROM current_measurements WHERE deliverable_id = d.id) m ON true')
     .joinRaw(
       'LEFT JOIN spec_versions sv ON sv.id = spec_version_in_force(dc.channel_id, d.content_kind, now())',
     )
     .leftJoin('verdicts as v', 'v.id', 'dc.verdict_id')
     .whereNull('d.discarded_at')
-    .whereRaw(
-      '(v.spec_version_id, v.measurement_id) IS DISTINCT FROM (sv.id, CASE WHEN sv.id IS NULL THEN NULL ELSE m.id END)',
-    )
+    .whereRaw(`(${isStale})`)
     .modify((query) => {
       if (scope.kind === 'member')
         query.where((own) =>
@@ -80,6 +82,7 @@ export async function listStaleStandings(
       if (filter.channelIds) query.whereIn('dc.channel_id', filter.channelIds);
       if (filter.specIds) query.whereIn('sv.spec_id', filter.specIds);
     })
+    .orderBy(['dc.deliverable_id', 'dc.channel_id', 'm.position'])
     .select(
       'd.organisation_id',
       'dc.deliverable_id',
@@ -92,16 +95,28 @@ export async function listStaleStandings(
       'm.figures',
       'm.findings',
     );
-  return rows.map((row) => ({
-    organisationId: row.organisation_id,
-    deliverableId: row.deliverable_id,
-    channelId: row.channel_id,
-    outcome: row.outcome,
-    specVersionId: row.spec_version_id,
-    specBody: row.spec_version_id === null ? null : specBodySchema.parse(row.body),
-    measurementId: row.measurement_id,
-    measurement: measurementRow.parse({ format: row.format, figures: row.figures, findings: row.findings }),
-  }));
+  const standings: StaleStanding[] = [];
+  for (const row of rows) {
+    const { format, figures, findings } = row;
+    const measurement = {
+      id: row.measurement_id,
+      ...measurementRow.parse({ format, figures, findings }),
+    };
+    const last = standings.at(-1);
+    if (last?.deliverableId === row.deliverable_id && last.channelId === row.channel_id)
+      last.measurements.push(measurement);
+    else
+      standings.push({
+        organisationId: row.organisation_id,
+        deliverableId: row.deliverable_id,
+        channelId: row.channel_id,
+        outcome: row.outcome,
+        specVersionId: row.spec_version_id,
+        specBody: row.spec_version_id === null ? null : specBodySchema.parse(row.body),
+        measurements: [measurement],
+      });
+  }
+  return standings;
 }
 
 /** The verdict of a measurement under a version: the one that stands, or a new one. Returns its id. */

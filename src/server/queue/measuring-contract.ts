@@ -1,7 +1,9 @@
 /** What the parts of measuring say to each other: the service, the queue's worker, and the child process that measures. */
 import { z } from 'zod';
 import { figuresSchema, findingSchema, formatSchema } from '../../domain/api/deliverables.ts';
+import { measuringPlanSchema } from '../../domain/measuring-plan.ts';
 import { findingCodes } from '../../engine/figures.ts';
+import { speakers } from '../../engine/layouts.ts';
 import { progressSchema, type Progress } from './progress.ts';
 
 /** What whoever measures is told, and nothing more: it needs no database. */
@@ -12,6 +14,7 @@ export const measuringTaskSchema = z.object({
   fileName: z.string(),
   byteSize: z.number(),
   sha256Declared: z.string().nullable(),
+  plan: measuringPlanSchema,
 });
 export type MeasuringTask = z.infer<typeof measuringTaskSchema>;
 
@@ -19,13 +22,26 @@ export type MeasuringTask = z.infer<typeof measuringTaskSchema>;
 export const measuringOutcomeSchema = z.discriminatedUnion('kind', [
   z.object({
     kind: z.literal('measured'),
-    format: formatSchema,
-    figures: figuresSchema,
-    findings: z.array(findingSchema.extend({ code: z.enum(findingCodes) })),
+    /** One measurement each, in the plan's order. */
+    presentations: z
+      .array(
+        z.object({
+          // As measured, which may be more than a plan may ask for: a whole file has what it has.
+          presentation: z.object({
+            name: z.string(),
+            audioChannels: z.array(z.number().int()),
+            speakers: z.array(z.enum(speakers)),
+          }),
+          format: formatSchema,
+          figures: figuresSchema,
+          findings: z.array(findingSchema.extend({ code: z.enum(findingCodes) })),
+          seriesKey: z.string(),
+        }),
+      )
+      .min(1),
     engineVersion: z.string(),
     parametersHash: z.string(),
     sha256: z.string().regex(/^[0-9a-f]{64}$/),
-    seriesKey: z.string(),
     measuringSeconds: z.number(),
   }),
   z.object({ kind: z.literal('file'), code: z.string(), message: z.string(), sha256: z.string().nullable() }),

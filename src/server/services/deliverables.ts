@@ -22,6 +22,8 @@ import {
   type DeliverableRecord,
 } from '../db/deliverables-repository.ts';
 import { listJudgedBodies } from '../db/judged-specs-repository.ts';
+import { findKnownFormat, listPlans, readPlan } from '../db/plans-repository.ts';
+import { listPresentations, listPresentationVerdicts } from '../db/presentations-repository.ts';
 import { listProgrammes as listProgrammeRecords } from '../db/programmes-repository.ts';
 import { lockDeliverable, listSubmissionsOfDeliverable } from '../db/submission-making-repository.ts';
 import { publishEvent } from '../events.ts';
@@ -35,6 +37,7 @@ import { setDeliverableDetails } from './deliverable-details.ts';
 import { itemResult, type ItemResult } from './item-results.ts';
 import { judgeDeliverables } from './judging.ts';
 import { cursorOf, listedWords } from './list-filters.ts';
+import { toMeasurementAnswer } from './measurement-answer.ts';
 
 type Query = z.infer<typeof deliverableQuerySchema>;
 type List = z.infer<typeof deliverableListSchema>;
@@ -132,25 +135,37 @@ export async function getDeliverableReport(scope: Scope, id: string): Promise<An
   const records = await readDeliverables(db(), scope, [id]);
   const [row] = await toRows(scope, records);
   if (!row) return noDeliverable;
-  const [{ measurement, sha256, uploadedBy, measuredAt, replaces }] = records;
+  const [{ measurement, sha256, uploadedBy, measuredAt, replaces, planId, frameRate }] = records;
   const versionIds = [...new Set(row.channels.flatMap((channel) => channel.specVersionId ?? []))];
+  const [presentations, verdicts, plan, plans, knownFormat] = await Promise.all([
+    listPresentations(db(), scope, id),
+    listPresentationVerdicts(db(), scope, id, versionIds),
+    readPlan(db(), scope, planId),
+    listPlans(db(), scope, id),
+    findKnownFormat(db(), scope, id),
+  ]);
   return done({
     ...row,
     sha256,
     uploadedBy,
     measuredAt: measuredAt?.toISOString() ?? null,
-    measurement: measurement && {
-      id: measurement.id,
-      engineVersion: measurement.engineVersion,
-      format: measurement.format,
-      figures: measurement.figures,
-      findings: measurement.findings,
-      measuringSeconds: measurement.measuringSeconds,
-      createdAt: measurement.createdAt.toISOString(),
-    },
+    measurement: measurement && toMeasurementAnswer(measurement),
+    presentations: presentations.map(({ measurement: measured, ...presentation }) => ({
+      ...presentation,
+      measurement: toMeasurementAnswer(measured),
+      verdicts: verdicts
+        .filter(({ position }) => position === presentation.position)
+        .map(({ specVersionId, verdict }) => ({ specVersionId, verdict })),
+    })),
+    plan,
+    frameRate,
+    plans: plans.map((one) => ({ ...one, createdAt: one.createdAt.toISOString() })),
+    knownFormat,
+    // A bench measures whole files.
     bench:
-      measurement &&
-      (await readBenchComparison(db(), scope, id, measurement.figures, measurement.engineVersion)),
+      measurement && planId === null
+        ? await readBenchComparison(db(), scope, id, measurement.figures, measurement.engineVersion)
+        : null,
     specs: measurement ? await listJudgedBodies(db(), scope, measurement.id, versionIds) : [],
     replaces,
   });

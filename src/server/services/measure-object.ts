@@ -1,5 +1,4 @@
 /** Measures one stored object: bytes in ranges, hash taken on the way, series put back. Knows no database. */
-import { createHash } from 'node:crypto';
 import { engineVersion } from '../../engine/figures.ts';
 import { encodeSeries } from '../../engine/series.ts';
 import type { Measured } from '../../engine/measure.ts';
@@ -16,10 +15,7 @@ import {
   seriesKey,
   StorageTrouble,
 } from '../storage/storage.ts';
-
-/** Named in the measurement's identity: another window, order, stream or decoder is another measurement. */
-const wholeFile = { window: null, audioChannels: 'all, in file order', stream: 0, decoder: 'by first bytes' };
-const parametersHash = createHash('sha256').update(JSON.stringify(wholeFile)).digest('hex');
+import { planHash } from './plan-identity.ts';
 
 const hashMismatch = {
   code: 'hash-mismatch',
@@ -79,15 +75,19 @@ export async function measureObject(task: MeasuringTask, options: Options): Prom
     if (task.sha256Declared !== null && sha256 !== task.sha256Declared)
       return { kind: 'file', ...hashMismatch, sha256 };
     if (!read.ok) return { kind: 'file', code: read.code, message: read.message, sha256 };
-    const key = seriesKey(task.organisationId, task.deliverableId, engineVersion, parametersHash);
-    await putObject(key, encodeSeries(read.series));
+    const parametersHash = planHash(task.plan);
+    const presentations = [];
+    for (const [i, { presentation, measurement, series }] of read.measured.entries()) {
+      const key = seriesKey(task.organisationId, task.deliverableId, engineVersion, parametersHash, i + 1);
+      await putObject(key, encodeSeries(series));
+      presentations.push({ presentation, ...measurement, seriesKey: key });
+    }
     return {
       kind: 'measured',
-      ...read.measurement,
+      presentations,
       engineVersion,
       parametersHash,
       sha256,
-      seriesKey: key,
       measuringSeconds: (performance.now() - began) / 1000,
     };
   } catch (error) {
@@ -95,21 +95,20 @@ export async function measureObject(task: MeasuringTask, options: Options): Prom
   }
 }
 
-type Read = Measured;
-
 /** The engine's answer; a file that it cannot read is an answer too, so that the hash is looked at all the same. */
 async function readAll(
   task: MeasuringTask,
   source: ByteSource,
   { onProgress, signal, scratchDir }: Options,
-): Promise<({ ok: true } & Read) | { ok: false; code: string; message: string }> {
+): Promise<{ ok: true; measured: Measured[] } | { ok: false; code: string; message: string }> {
   try {
-    const [read] = await measureSource(source, task.fileName, {
+    const measured = await measureSource(source, task.fileName, {
+      plan: task.plan,
       onProgress: (secondsDone, secondsTotal) => onProgress({ secondsDone, secondsTotal }),
       signal,
       scratchDir,
     });
-    return { ok: true, ...read };
+    return { ok: true, measured };
   } catch (error) {
     if (error instanceof UnreadableError && !signal.aborted)
       return { ok: false, code: error.code, message: error.message };

@@ -12,7 +12,8 @@ import {
   markUnreadable,
   type DeliverableCore,
 } from '../db/deliverable-writes-repository.ts';
-import { ensureWholeFilePresentation, insertMeasurement } from '../db/measurements-repository.ts';
+import { ensurePresentation, insertMeasurement } from '../db/measurements-repository.ts';
+import { readPlan } from '../db/plans-repository.ts';
 import { publishEvent } from '../events.ts';
 import { log } from '../log.ts';
 import {
@@ -55,6 +56,7 @@ export async function measureDeliverable(
   if (!deliverable) return endWithoutStart(deliverableId);
   await tell(deliverable, 'measuring', null);
 
+  const plan = await readPlan(db(), scope, deliverable.planId);
   let outcome: MeasuringOutcome;
   try {
     outcome = await measureElsewhere(
@@ -65,6 +67,7 @@ export async function measureDeliverable(
         fileName: deliverable.fileName,
         byteSize: deliverable.byteSize,
         sha256Declared: deliverable.sha256Declared,
+        plan,
       },
       { onProgress: (progress) => void tell(deliverable, 'measuring', progress), signal },
     );
@@ -118,7 +121,7 @@ async function endUnreadable(
   sha256: string | null,
 ): Promise<MeasuringEnd> {
   await db().transaction(async (trx) => {
-    if (!(await markUnreadable(trx, scope, deliverable.id, { code, message }, sha256))) return;
+    if (!(await markUnreadable(trx, scope, deliverable, { code, message }, sha256))) return;
     await recordEvent(trx, scope, {
       organisationId: deliverable.organisationId,
       action: 'deliverable.unreadable',
@@ -135,22 +138,33 @@ async function writeMeasured(
   deliverable: DeliverableCore,
   outcome: Extract<MeasuringOutcome, { kind: 'measured' }>,
 ): Promise<MeasuringEnd> {
-  const { id: deliverableId, organisationId } = deliverable;
+  const { id: deliverableId, organisationId, planId } = deliverable;
+  const { presentations, ...made } = outcome;
   await db().transaction(async (trx) => {
-    const presentationId = await ensureWholeFilePresentation(trx, scope, {
-      organisationId,
-      deliverableId,
-      layout: outcome.format.layout,
-    });
-    const findings = await findingsWithBench(trx, scope, deliverableId, outcome, outcome.engineVersion);
-    await insertMeasurement(trx, scope, {
-      ...outcome,
-      findings,
-      organisationId,
-      deliverableId,
-      presentationId,
-    });
-    if (!(await markMeasured(trx, scope, deliverableId, outcome.sha256))) return;
+    for (const [i, { presentation, ...measured }] of presentations.entries()) {
+      const presentationId = await ensurePresentation(trx, scope, {
+        organisationId,
+        deliverableId,
+        planId,
+        position: i + 1,
+        presentation,
+        layout: measured.format.layout,
+      });
+      // A bench measures whole files.
+      const findings =
+        planId === null
+          ? await findingsWithBench(trx, scope, deliverableId, measured, outcome.engineVersion)
+          : measured.findings;
+      await insertMeasurement(trx, scope, {
+        ...measured,
+        ...made,
+        findings,
+        organisationId,
+        deliverableId,
+        presentationId,
+      });
+    }
+    if (!(await markMeasured(trx, scope, deliverable, outcome.sha256))) return;
     await judgeDeliverables(trx, scope, { deliverableIds: [deliverableId] });
     await recordEvent(trx, scope, {
       organisationId,

@@ -7,6 +7,7 @@ import { decodeSeries } from '../../engine/series.ts';
 import { db } from '../db/connection.ts';
 import { readDeliverables, type MeasurementRecord } from '../db/deliverables-repository.ts';
 import { listJudgedBodies } from '../db/judged-specs-repository.ts';
+import { listFrozenPresentations, listPresentations } from '../db/presentations-repository.ts';
 import { findSubmissionFreeze } from '../db/submission-details-repository.ts';
 import { log } from '../log.ts';
 import { done, lacking, refuse, type Answer } from '../refusals.ts';
@@ -15,25 +16,34 @@ import { getObject, ObjectMissing, presignedGet, StorageTrouble } from '../stora
 
 const noDeliverable = refuse('not_found', 'There is no such deliverable.');
 const noSubmission = refuse('not_found', 'There is no such submission.');
+const noPresentation = (count: number) =>
+  refuse(
+    'not_found',
+    `It has ${count === 1 ? 'one presentation' : `${count} presentations`}, and not one at this place.`,
+  );
 const notArrived = refuse(
   'conflict',
   'This file is still being uploaded. It can be played once it has arrived whole.',
 );
 
 /**
- * Loudness over time of a deliverable. Excursions are those beyond the limits of `specVersionId`, which must be one that
+ * Loudness over time of a deliverable's presentation at this place. Excursions are those beyond the limits of `specVersionId`, which must be one that
  * the deliverable was judged by; without it there are none.
  */
 export async function getDeliverablePassage(
   scope: Scope,
   id: string,
   specVersionId?: string,
+  position = 1,
 ): Promise<Answer<Passage>> {
   const no = lacking(scope, 'deliverable:read');
   if (no) return no;
   const [deliverable] = await readDeliverables(db(), scope, [id]);
   if (!deliverable) return noDeliverable;
-  const { measurement } = deliverable;
+  const presentations = await listPresentations(db(), scope, id);
+  if (presentations.length > 0 && position > presentations.length)
+    return noPresentation(presentations.length);
+  const measurement = presentations.find((one) => one.position === position)?.measurement;
   if (!measurement)
     return refuse('conflict', deliverable.reason ?? 'It is not measured yet, so there is nothing to draw.');
   if (!specVersionId) return passageUnder(measurement, null);
@@ -43,11 +53,18 @@ export async function getDeliverablePassage(
 }
 
 /** Loudness over time of what was submitted, with excursions beyond the spec version that the submission froze. */
-export async function getSubmissionPassage(scope: Scope, id: string): Promise<Answer<Passage>> {
+export async function getSubmissionPassage(scope: Scope, id: string, position = 1): Promise<Answer<Passage>> {
   const no = lacking(scope, 'submission:read');
   if (no) return no;
-  const frozen = await findSubmissionFreeze(db(), scope, id);
-  return frozen ? passageUnder(frozen.measurement, frozen.specBody) : noSubmission;
+  const [frozen, presentations] = await Promise.all([
+    findSubmissionFreeze(db(), scope, id),
+    listFrozenPresentations(db(), scope, id),
+  ]);
+  if (!frozen) return noSubmission;
+  const presentation = presentations.find((one) => one.position === position);
+  return presentation
+    ? passageUnder(presentation.measurement, frozen.specBody)
+    : noPresentation(presentations.length);
 }
 
 async function passageUnder(measurement: MeasurementRecord, body: SpecBody | null): Promise<Answer<Passage>> {
@@ -70,10 +87,12 @@ async function passageUnder(measurement: MeasurementRecord, body: SpecBody | nul
     );
   }
   // One audio channel that the spec judges as two is drawn as it is judged.
-  const weight = body?.mono === 'asDual' && measurement.format.channels === 1 ? 2 : 1;
+  const isMono = measurement.figures.truePeak.perChannelDbtp.length === 1;
+  const weight = body?.mono === 'asDual' && isMono ? 2 : 1;
   const curves = passageOf(decodeSeries(bytes), { weight });
   const excursions = body ? findExcursions({ ...curves, excursions: [] }, body) : [];
-  return done({ ...roundedCurves(curves), excursions });
+  const { windowStartSeconds } = measurement.figures;
+  return done({ windowStartSeconds, ...roundedCurves(curves), excursions });
 }
 
 /** The address, good for some hours, from which the browser plays the original. */

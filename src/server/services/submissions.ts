@@ -9,10 +9,12 @@ import type {
   submissionQuerySchema,
 } from '../../domain/api/submissions.ts';
 import { judge } from '../../domain/judge.ts';
+import { overPresentations } from '../../domain/presentations-verdict.ts';
 import { stateAfter } from '../../domain/submission-states.ts';
 import { overallOutcomeSchema, submissionStateNames, submissionStates } from '../../domain/vocabulary.ts';
 import { db, inTransaction, type Db } from '../db/connection.ts';
 import { findVersionInForce } from '../db/judged-specs-repository.ts';
+import { listFrozenPresentations } from '../db/presentations-repository.ts';
 import {
   findReplacedFigures,
   findSubmissionFreeze,
@@ -33,6 +35,7 @@ import { done, lacking, refuse, type Answer } from '../refusals.ts';
 import type { MemberScope, Scope } from '../scope.ts';
 import { itemResult, type ItemResult } from './item-results.ts';
 import { cursorOf, listedWords } from './list-filters.ts';
+import { toMeasurementAnswer } from './measurement-answer.ts';
 import {
   acted,
   recordAct,
@@ -114,28 +117,30 @@ export async function getSubmissionReport(scope: Scope, id: string): Promise<Ans
   const record = await findSubmission(db(), scope, id);
   const frozen = record && (await findSubmissionFreeze(db(), scope, id));
   if (!record || !frozen) return noSubmission;
-  const [[row], notes, waivers, replaces, inForce] = await Promise.all([
+  const [[row], presentations, notes, waivers, replaces, inForce] = await Promise.all([
     toSubmissionRows(scope, [record]),
+    listFrozenPresentations(db(), scope, id),
     listNotes(db(), scope, id),
     listWaivers(db(), scope, id),
     record.replacesId ? findReplacedFigures(db(), scope, record.replacesId) : null,
     findVersionInForce(db(), scope, record.channel.id, record.contentKind),
   ]);
-  const { measurement } = frozen;
   // Judged here and now: a verdict row under the newer version need not exist for what has been submitted.
-  const newer = inForce && inForce.id !== record.specVersionId ? judge(measurement, inForce.body) : null;
+  const newer =
+    inForce && inForce.id !== record.specVersionId
+      ? overPresentations(
+          presentations.map(({ name, measurement }) => ({ name, verdict: judge(measurement, inForce.body) })),
+        )
+      : null;
   return done({
     ...row,
     sha256: record.sha256,
-    measurement: {
-      id: measurement.id,
-      engineVersion: measurement.engineVersion,
-      format: measurement.format,
-      figures: measurement.figures,
-      findings: measurement.findings,
-      measuringSeconds: measurement.measuringSeconds,
-      createdAt: measurement.createdAt.toISOString(),
-    },
+    measurement: toMeasurementAnswer(frozen.measurement),
+    presentations: presentations.map((one) => ({
+      ...one,
+      measurement: toMeasurementAnswer(one.measurement),
+    })),
+    frameRate: frozen.frameRate,
     specBody: frozen.specBody,
     specVersionId: record.specVersionId,
     underNewer:

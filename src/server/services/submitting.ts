@@ -4,6 +4,7 @@ import type { DeliverableState } from '../../domain/vocabulary.ts';
 import { inTransaction, type Db } from '../db/connection.ts';
 import { addChannels } from '../db/deliverable-details-repository.ts';
 import { listRoleHolders } from '../db/people-repository.ts';
+import { freezePresentations } from '../db/presentations-repository.ts';
 import {
   findDeliveryChannel,
   findVerdictInForce,
@@ -142,6 +143,11 @@ async function freeze(
     airAt: airAt ?? newest?.airAt ?? null,
     submittedBy: scope.userId,
     replacesId: newest?.id ?? null,
+  });
+  await freezePresentations(trx, {
+    submissionId: id,
+    deliverableId: deliverable.id,
+    specVersionId: judged.specVersionId,
   });
   const record = await findSubmission(trx, scope, id);
   if (!record) throw new Error(`Submission ${id} was written and not found`);

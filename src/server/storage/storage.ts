@@ -281,10 +281,11 @@ export function closeStorage(): void {
 
 export const originalKey = (organisationId: string, deliverableId: string) =>
   `originals/${organisationId}/${deliverableId}`;
-/** One series per deliverable, engine version and parameters, as measurements are unique by them. */
+/** One series per deliverable, engine version, parameters and place of the presentation, as measurements are unique by them. */
 export const seriesKey = (
   organisationId: string,
   deliverableId: string,
   engineVersion: string,
   parametersHash: string,
-) => `series/${organisationId}/${deliverableId}/${engineVersion}-${parametersHash.slice(0, 16)}`;
+  position: number,
+) => `series/${organisationId}/${deliverableId}/${engineVersion}-${parametersHash.slice(0, 16)}-${position}`;

@@ -1,6 +1,7 @@
 import { afterEach, describe, expect, it } from 'vitest';
 import { measuringChildren, type MeasuringChildren } from '../../../src/server/queue/measuring-children.ts';
 import type { Progress } from '../../../src/server/queue/progress.ts';
+import { wholeFile } from '../../../src/engine/plan.ts';
 
 let children: MeasuringChildren;
 afterEach(() => {
@@ -17,6 +18,7 @@ const task = (fileName: string) => ({
   fileName,
   byteSize: 1,
   sha256Declared: null,
+  plan: wholeFile,
 });
 const measure = (fileName: string, signal = new AbortController().signal, told: Progress[] = []) =>
   children.measure(task(fileName), { onProgress: (progress) => void told.push(progress), signal });

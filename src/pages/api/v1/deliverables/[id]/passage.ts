@@ -4,6 +4,6 @@ import { getDeliverablePassage } from '@/server/services/passages.ts';
 
 /** Loudness over time, with excursions beyond the limits of `specVersionId`. */
 export const GET = endpoint(async (context, scope) => {
-  const { specVersionId } = query(context, passageQuerySchema);
-  return getDeliverablePassage(scope, idParam(context), specVersionId);
+  const { specVersionId, presentation } = query(context, passageQuerySchema);
+  return getDeliverablePassage(scope, idParam(context), specVersionId, presentation);
 });
