@@ -18,7 +18,7 @@ export function AgainstPicker({ specs, chosen, onChoose }: Props) {
     if (ids.length > 0) onChoose(ids);
   };
   return (
-    <details className="group relative min-w-0">
+    <details data-menu className="group relative min-w-0">
       <summary className="flex min-h-8 list-none items-baseline gap-2 rounded border border-hairline bg-sheet px-2.5 py-1">
         <span className="font-semibold whitespace-nowrap">Held against</span>
         <span className="min-w-0 truncate">

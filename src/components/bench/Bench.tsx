@@ -4,6 +4,7 @@ import { DataTable } from '@/components/table/DataTable.tsx';
 import { KeysHelp, type Keys } from '@/components/table/KeysHelp.tsx';
 import { useAddressState } from '@/components/table/use-address-state.ts';
 import { ProgressBar } from '@/components/upload/ProgressBar.tsx';
+import { isUnderWay } from '@/components/upload/upload-item.ts';
 import { formatDuration } from '@/domain/figures-text.ts';
 import { AgainstPicker } from './AgainstPicker.tsx';
 import { BenchDetail } from './BenchDetail.tsx';
@@ -43,10 +44,11 @@ export function Bench({ specs, search, handover }: Props) {
   const against = params.get('against');
   const chosen = useMemo(() => chosenSpecs(specs, against), [specs, against]);
   const several = chosen.length > 1;
-  const columns = useMemo(
-    () => benchColumns({ onStop: (id) => queue.cancel(id), onAgain: (id) => queue.again(id) }, several),
-    [queue, several],
-  );
+  const sends = handover !== undefined;
+  const columns = useMemo(() => {
+    const acts = { onStop: (id: string) => queue.cancel(id), onAgain: (id: string) => queue.again(id) };
+    return benchColumns(acts, { several, sends });
+  }, [queue, several, sends]);
 
   const rows = items.map((item): BenchRow => ({
     id: item.id,
@@ -70,13 +72,24 @@ export function Bench({ specs, search, handover }: Props) {
           : `${leftOut} of these files lie on the bench already; they were left out.`,
     );
   };
-  const remove = (ids: ReadonlySet<string>) => {
+  const remove = (asked: ReadonlySet<string>) => {
+    const going = rows.filter((row) => asked.has(row.id) && row.handover && isUnderWay(row.handover.upload));
+    const ids = new Set([...asked].filter((id) => !going.some((row) => row.id === id)));
+    setSaid(
+      going.length === 0
+        ? null
+        : `Still on the way to storage, and left on the bench: ${going.map(({ item }) => item.file.name).join(', ')}.`,
+    );
     queue.remove(ids);
     setPicked((before) => new Set([...before].filter((id) => !ids.has(id))));
     if (focused && ids.has(focused)) setFocused(null);
   };
   const pickedRows = rows.filter(({ id }) => picked.has(id));
-  const sendable = (pickedRows.length > 0 ? pickedRows : rows).filter((row) => row.handover === null);
+  const unsent = (among: BenchRow[]) => among.filter((row) => row.handover === null);
+  const sendable =
+    unsent(pickedRows).length > 0
+      ? unsent(pickedRows)
+      : unsent(rows.filter(({ item }) => item.result !== null));
   return (
     <>
       <DropSlip onFiles={take} low={items.length > 0} />

@@ -9,6 +9,8 @@ export interface Handover {
   upload: UploadItem;
   row: DeliverableRow | null;
   progress: { secondsDone: number; secondsTotal: number | null } | null;
+  /** The service could not be asked: why. */
+  trouble: string | null;
   onPause: () => void;
   onResume: () => void;
 }
@@ -16,12 +18,12 @@ export interface Handover {
 const quiet = 'text-teal underline underline-offset-4';
 
 export function HandedOver({
-  handover: { upload, row, progress, onPause, onResume },
+  handover: { upload, row, progress, trouble, onPause, onResume },
 }: {
   handover: Handover;
 }) {
   const { state, bytesSent, byteSize, fileName, message } = upload;
-  if (state === 'sent') return <AtTheService row={row} progress={progress} />;
+  if (state === 'sent') return <AtTheService row={row} progress={progress} trouble={trouble} />;
   const words = {
     waiting: 'Waiting to be sent',
     paused: 'Paused, sent',
@@ -58,8 +60,11 @@ export function HandedOver({
   );
 }
 
-function AtTheService({ row, progress }: Pick<Handover, 'row' | 'progress'>) {
-  if (!row) return <span className="text-[12.5px] text-muted">Sent</span>;
+function AtTheService({ row, progress, trouble }: Pick<Handover, 'row' | 'progress' | 'trouble'>) {
+  if (!row)
+    return (
+      <span className="block max-w-44 text-[12.5px] whitespace-normal text-muted">{trouble ?? 'Sent'}</span>
+    );
   const report = (words: string) => (
     <a href={`/deliverables/${row.id}`} className={quiet}>
       {words}
@@ -85,7 +90,7 @@ function AtTheService({ row, progress }: Pick<Handover, 'row' | 'progress'>) {
       {row.outcome ? (
         <span className="flex items-center gap-2">
           <VerdictMark outcome={row.outcome} />
-          <span className="text-muted">{row.channels[0]?.channelName}</span>
+          <span className="whitespace-nowrap text-muted">{row.channels[0]?.channelName}</span>
         </span>
       ) : (
         <span className="text-muted">measured by the service</span>

@@ -94,10 +94,16 @@ const specColumn: ColumnDef<BenchRow, unknown> = {
     ),
 };
 
-/** `several`: the verdict is the worst of several specs, so the row says of which. */
+interface Shown {
+  /** The verdict is the worst of several specs, so the row says of which. */
+  several: boolean;
+  /** Files can be handed over to the service, which is told in the last column. */
+  sends: boolean;
+}
+
 export const benchColumns = (
   { onStop, onAgain }: RowActs,
-  several: boolean,
+  { several, sends }: Shown,
 ): ColumnDef<BenchRow, unknown>[] => [
   { id: 'verdict', header: 'Verdict', cell: ({ row: { original: row } }) => <Standing row={row} /> },
   {
@@ -183,7 +189,7 @@ export const benchColumns = (
   ...(several ? [specColumn] : []),
   {
     id: 'acts',
-    header: () => <span className="sr-only">Acts</span>,
+    header: () => (sends ? 'At the service' : <span className="sr-only">Acts</span>),
     cell: ({ row: { original: row } }) => {
       const { id, file, state } = row.item;
       if (row.handover) return <HandedOver handover={row.handover} />;

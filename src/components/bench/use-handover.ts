@@ -72,6 +72,7 @@ export function useHandover(programmes: string[]): {
         upload,
         row,
         progress: (row && (progress.get(row.id) ?? row.progress)) ?? null,
+        trouble: rows.error?.message ?? null,
         onPause: () => queue.pause(upload.key),
         onResume: () => void queue.resume(upload.key),
       };
