@@ -1,4 +1,5 @@
 import { z } from 'zod';
+import { frameRateNames } from '../../engine/timecode.ts';
 import {
   contentKindSchema,
   deliverableStateSchema,
@@ -11,6 +12,8 @@ import { specBodySchema } from '../spec.ts';
 import { benchComparisonSchema, benchFiguresSchema } from '../bench-figures.ts';
 import { idSchema, itemResultSchema, listOf, momentSchema, pageQuerySchema, personSchema } from './common.ts';
 
+const level = z.number().nullable();
+export const frameRateSchema = z.enum(frameRateNames);
 export const formatSchema = z.object({
   container: z.string(),
   codec: z.string(),
@@ -31,8 +34,20 @@ export const formatSchema = z.object({
       }),
     )
     .optional(),
+  startTimeReferenceSamples: z.number().optional(),
+  startTimecode: z.string().optional(),
+  frameRate: frameRateSchema.optional(),
+  trackNames: z.array(z.string()).optional(),
+  declaredLoudness: z
+    .object({
+      integratedLufs: level,
+      rangeLu: level,
+      truePeakDbtp: level,
+      momentaryMaxLufs: level,
+      shortTermMaxLufs: level,
+    })
+    .optional(),
 });
-const level = z.number().nullable();
 export const figuresSchema = z.object({
   loudness: z.object({
     integratedLufs: level,
@@ -158,7 +173,7 @@ export const deliverableReportSchema = deliverableRowSchema.extend({
   presentations: z.array(measuredPresentationSchema),
   plan: measuringPlanSchema,
   /** Frames a second by which its times are counted, where the file tells none. */
-  frameRate: z.string().nullable(),
+  frameRate: frameRateSchema.nullable(),
   /** Plans that it was ever given, newest first; the whole file, which needs none, is not among them. */
   plans: z.array(
     z.object({
@@ -180,7 +195,7 @@ export type DeliverableReport = z.infer<typeof deliverableReportSchema>;
 /** How a deliverable is to be measured from now on. */
 export const setPlanSchema = z.object({
   plan: measuringPlanSchema,
-  frameRate: z.string().max(20).nullable().default(null),
+  frameRate: frameRateSchema.nullable().default(null),
 });
 /** 'measuring': a job was made; 'known': it was measured so before, and those figures stand now; 'same': nothing changed. */
 export const setPlanResultSchema = z.object({

@@ -5,6 +5,7 @@ import { verdictBodySchema } from '../verdict.ts';
 import {
   figuresSchema,
   formatSchema,
+  frameRateSchema,
   measuredPresentationSchema,
   measurementSchema,
   passageQuerySchema,
@@ -78,7 +79,7 @@ export const submissionReportSchema = submissionRowSchema.extend({
     measuredPresentationSchema.omit({ verdicts: true }).extend({ verdict: verdictBodySchema }),
   ),
   /** Frames a second by which its times are counted, where the file tells none. */
-  frameRate: z.string().nullable(),
+  frameRate: frameRateSchema.nullable(),
   specBody: specBodySchema,
   specVersionId: idSchema,
   /** Verdict under the version now in force, where that is another one. */

@@ -2,7 +2,12 @@
 import type { Knex } from 'knex';
 import { z } from 'zod';
 import type { deliverableQuerySchema, ChannelVerdict } from '../../domain/api/deliverables.ts';
-import { figuresSchema, findingSchema, formatSchema } from '../../domain/api/deliverables.ts';
+import {
+  figuresSchema,
+  findingSchema,
+  formatSchema,
+  frameRateSchema,
+} from '../../domain/api/deliverables.ts';
 import { overPresentations } from '../../domain/presentations-verdict.ts';
 import { verdictBodySchema } from '../../domain/verdict.ts';
 import type {
@@ -11,6 +16,7 @@ import type {
   OverallOutcome,
   SubmissionState,
 } from '../../domain/vocabulary.ts';
+import type { FrameRateName } from '../../engine/timecode.ts';
 import type { Scope } from '../scope.ts';
 import type { Db } from './connection.ts';
 import { containing, cutPage, naturalKey, pageByKey, type Cursor, type SortKey } from './keyset.ts';
@@ -39,7 +45,7 @@ export interface DeliverableRecord {
   /** How it is measured now; `null`: the whole file. */
   planId: string | null;
   /** Frames a second by which its times are counted, where the file tells none. */
-  frameRate: string | null;
+  frameRate: FrameRateName | null;
   createdAt: Date;
   measuredAt: Date | null;
 }
@@ -249,7 +255,7 @@ const toDeliverable = (row: WholeRow): DeliverableRecord => ({
       ? { id: row.replaces_id, fileName: row.replaces_file_name }
       : null,
   planId: row.plan_id,
-  frameRate: row.frame_rate,
+  frameRate: frameRateSchema.nullable().parse(row.frame_rate),
   createdAt: row.created_at,
   measuredAt: row.measured_at,
 });

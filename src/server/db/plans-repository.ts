@@ -3,6 +3,7 @@ import type { z } from 'zod';
 import { formatSchema } from '../../domain/api/deliverables.ts';
 import { measuringPlanSchema } from '../../domain/measuring-plan.ts';
 import { wholeFile, type MeasuringPlan } from '../../engine/plan.ts';
+import type { FrameRateName } from '../../engine/timecode.ts';
 import type { Scope } from '../scope.ts';
 import type { Db } from './connection.ts';
 import { within } from './within.ts';
@@ -79,7 +80,7 @@ export async function setCurrentPlan(
   db: Db,
   scope: Scope,
   deliverableId: string,
-  { planId, frameRate, again }: { planId: string | null; frameRate: string | null; again: boolean },
+  { planId, frameRate, again }: { planId: string | null; frameRate: FrameRateName | null; again: boolean },
 ): Promise<void> {
   await db('deliverables')
     .where('id', deliverableId)

@@ -1,7 +1,8 @@
 /** What belongs to one submission: what it froze, its notes and waivers, and what happened to it last. */
 import { specBodySchema, type SpecBody } from '../../domain/spec.ts';
 import type { OverallOutcome } from '../../domain/vocabulary.ts';
-import { figuresSchema } from '../../domain/api/deliverables.ts';
+import { figuresSchema, frameRateSchema } from '../../domain/api/deliverables.ts';
+import type { FrameRateName } from '../../engine/timecode.ts';
 import type { z } from 'zod';
 import type { Scope } from '../scope.ts';
 import type { Db } from './connection.ts';
@@ -19,7 +20,7 @@ export interface SubmissionFreeze {
   specBody: SpecBody;
   storageKey: string;
   fileName: string;
-  frameRate: string | null;
+  frameRate: FrameRateName | null;
 }
 
 export async function findSubmissionFreeze(
@@ -47,7 +48,7 @@ export async function findSubmissionFreeze(
     specBody: specBodySchema.parse(row.body),
     storageKey: row.storage_key,
     fileName: row.file_name,
-    frameRate: row.frame_rate,
+    frameRate: frameRateSchema.nullable().parse(row.frame_rate),
   };
 }
 

@@ -7,6 +7,7 @@ import { isOpen } from '../../domain/submission-states.ts';
 import type { DeliverableState } from '../../domain/vocabulary.ts';
 import { engineVersion } from '../../engine/figures.ts';
 import type { MeasuringPlan } from '../../engine/plan.ts';
+import type { FrameRateName } from '../../engine/timecode.ts';
 import { recordEvent } from '../db/audit-repository.ts';
 import { inTransaction, type Db } from '../db/connection.ts';
 import { unjudge } from '../db/deliverable-details-repository.ts';
@@ -112,7 +113,7 @@ async function putPlan(
   scope: MemberScope,
   deliverable: LockedDeliverable,
   plan: MeasuringPlan,
-  frameRate: string | null,
+  frameRate: FrameRateName | null,
 ): Promise<SetPlanResult['how']> {
   const { id, organisationId } = deliverable;
   const parametersHash = planHash(plan);

@@ -4,6 +4,7 @@ import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import { deliverableReportSchema, setPlanResultSchema } from '../../../src/domain/api/deliverables.ts';
 import { submissionReportSchema } from '../../../src/domain/api/submissions.ts';
 import { wholeFile, type MeasuringPlan, type Presentation } from '../../../src/engine/plan.ts';
+import type { FrameRateName } from '../../../src/engine/timecode.ts';
 import { db } from '../../../src/server/db/connection.ts';
 import type { MeasureElsewhere } from '../../../src/server/queue/measuring-contract.ts';
 import { hasLiveJob } from '../../../src/server/queue/measuring-queue.ts';
@@ -60,7 +61,7 @@ const fromFour: MeasuringPlan = {
   window: { startSeconds: 4, endSeconds: 10 },
   presentations: [pair('M&E', 2)],
 };
-const put = (id: string, plan: MeasuringPlan, frameRate: string | null = null, scope = chain.mixer) =>
+const put = (id: string, plan: MeasuringPlan, frameRate: FrameRateName | null = null, scope = chain.mixer) =>
   setMeasuringPlan(scope, id, { plan, frameRate });
 const report = async (id: string) =>
   deliverableReportSchema.parse(valueOf(await getDeliverableReport(chain.mixer, id)));
