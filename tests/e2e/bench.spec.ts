@@ -1,5 +1,5 @@
 import { execFileSync } from 'node:child_process';
-import { mkdtempSync, readFileSync, truncateSync, writeFileSync } from 'node:fs';
+import { mkdtempSync, readFileSync, rmSync, truncateSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { fileURLToPath } from 'node:url';
@@ -8,6 +8,7 @@ import { awake, expectAccessible, openAs, origin } from './people.ts';
 
 const root = fileURLToPath(new URL('../..', import.meta.url));
 const folder = mkdtempSync(join(tmpdir(), 'plimsoll-bench-'));
+test.afterAll(() => rmSync(folder, { recursive: true }));
 
 /** A stereo file of noise with a louder stretch, made by ffmpeg. */
 function noise(name: string, seconds: number, amplitude: number, ...options: string[]): string {

@@ -48,7 +48,7 @@ function troubleOf(error: unknown): WorkerAnswer {
   return {
     kind: 'trouble',
     message: changed
-      ? 'The file could not be read to its end. Has it been changed, moved, or its drive removed? Put it on the bench again.'
+      ? 'The file could not be read to its end. Is it a folder, or has it been changed, moved, or its drive removed? Put it on the bench again.'
       : `Measuring broke down (${why}). The other files go on; put this one on the bench again.`,
   };
 }
