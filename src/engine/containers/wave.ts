@@ -2,7 +2,7 @@
 import type { Finding } from '../figures.ts';
 import { layoutOfCount, layoutOfMask } from '../layouts.ts';
 import { UnreadableError, type ByteSource } from '../source.ts';
-import { chunksOf, fourCc, type Chunk } from './chunks.ts';
+import { chunksOf, fourCc, isId, type Chunk } from './chunks.ts';
 import { checkShape, dataExtent, layoutFindings } from './extent.ts';
 import { bextBytes, ixmlBytes, programmeFacts } from './programme-chunks.ts';
 import type { PcmLayout } from './pcm-source.ts';
@@ -96,6 +96,8 @@ export async function readWave(source: ByteSource): Promise<PcmLayout | null> {
   const sizeOf = (id: string, size32: number) =>
     size32 !== unknownSize || !sizes ? size32 : id === 'data' ? sizes.data : (sizes.others.get(id) ?? size32);
   for await (const chunk of chunksOf(source, 12, true, sizeOf)) {
+    // Behind the samples stand whole chunks or nothing that matters.
+    if (data && !isId(chunk.id)) break;
     if (chunk.id === 'ds64' && !sizes)
       sizes = readDs64(await source.read(chunk.offset, Math.min(chunk.size, 4096)));
     else if (chunk.id === 'fmt ' && !format) {
@@ -106,7 +108,6 @@ export async function readWave(source: ByteSource): Promise<PcmLayout | null> {
       bext = await source.read(chunk.offset, Math.min(chunk.size, bextBytes));
     else if (chunk.id === 'iXML' && !ixml)
       ixml = await source.read(chunk.offset, Math.min(chunk.size, ixmlBytes));
-    // What stands behind the samples is looked for only where the file goes on behind them.
     if (format && data && bext && ixml) break;
   }
   if (!format)
