@@ -1,7 +1,7 @@
 import { execFileSync } from 'node:child_process';
 import { mkdtempSync, readFileSync, rmSync, truncateSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
-import { join } from 'node:path';
+import { basename, join } from 'node:path';
 import { fileURLToPath } from 'node:url';
 import { expect, test, type Browser, type BrowserContextOptions, type Page } from '@playwright/test';
 import { awake, expectAccessible, openAs, origin } from './people.ts';
@@ -31,7 +31,19 @@ function measuredByCommand(path: string): Record<string, unknown> {
     encoding: 'utf8',
     env: { ...process.env, INIT_CWD: root },
   });
-  return (JSON.parse(said) as Record<string, unknown>[])[0];
+  const [{ error, file: _path, ...figures }] = JSON.parse(said) as Record<string, unknown>[];
+  expect(error).toBeNull();
+  expect(Object.keys(figures)).toEqual(
+    expect.arrayContaining(['format', 'loudness', 'truePeak', 'samplePeak', 'findings']),
+  );
+  return figures;
+}
+
+/** The whole figures of the file in hand, as the page saves them. */
+async function savedFigures(page: Page): Promise<Record<string, unknown>> {
+  const saving = page.waitForEvent('download');
+  await page.getByRole('button', { name: 'Save the figures as JSON' }).click();
+  return JSON.parse(readFileSync(await (await saving).path(), 'utf8')) as Record<string, unknown>;
 }
 
 /** A wave header that promises `bytes` of 24-bit stereo, and a file of that length full of nothing (sparse on disk). */
@@ -100,15 +112,8 @@ test('a visitor drops a mix: measured to the last digit as the command does, wit
   await expect(page.locator('canvas')).toBeVisible();
   expect(requests).toEqual([]);
 
-  const saving = page.waitForEvent('download');
-  await page.getByRole('button', { name: 'Save the figures as JSON' }).click();
-  const saved = JSON.parse(readFileSync(await (await saving).path(), 'utf8')) as Record<string, unknown>;
-  const { error, file: _path, ...command } = measuredByCommand(path);
-  expect(error).toBeNull();
-  expect(Object.keys(command)).toEqual(
-    expect.arrayContaining(['format', 'loudness', 'truePeak', 'samplePeak', 'findings']),
-  );
-  expect(saved).toMatchObject(command);
+  const command = measuredByCommand(path);
+  expect(await savedFigures(page)).toMatchObject(command);
 
   // What stands on the page is that figure, as shown.
   const integrated = (command.loudness as { integratedLufs: number }).integratedLufs;
@@ -126,6 +131,25 @@ test('a visitor drops a mix: measured to the last digit as the command does, wit
   // The browser itself asks for the page's icon anew when the address changes.
   expect(requests.filter((request) => !request.endsWith('/favicon.svg'))).toEqual([]);
   await expectAccessible(page);
+});
+
+test('other rates, depths, containers and layouts come out as the command measures them', async ({
+  browser,
+}) => {
+  const paths = [
+    noise('a.aiff', 6, 0.3, '-c:a', 'pcm_s16be', '-ar', '44100', '-ac', '1'),
+    noise('b.wav', 6, 0.3, '-c:a', 'pcm_f32le', '-ar', '96000', '-ac', '6'),
+    noise('c.wav', 6, 0.3, '-c:a', 'pcm_s32le', '-ar', '22050', '-rf64', 'always'),
+  ];
+  const { page } = await visit(browser);
+  await put(page, ...paths);
+  for (const path of paths) {
+    const row = rowOf(page, new RegExp(basename(path).replace('.', '\\.')));
+    await expect(row.getByText(verdict)).toBeVisible();
+    await row.click({ position: { x: 60, y: 10 } });
+    await expect(page.getByRole('heading', { name: basename(path) })).toBeVisible();
+    expect(await savedFigures(page)).toMatchObject(measuredByCommand(path));
+  }
 });
 
 test('the page of a visitor, and the worker that measures, may connect to nothing', async ({ browser }) => {

@@ -21,7 +21,10 @@ interface Props {
   specs: readonly BenchSpec[];
   search: string;
   /** Where files can be handed over to the service: the act for those picked, and where each stands. */
-  handover?: { offer: (rows: BenchRow[]) => void; of: (id: string) => Handover | null };
+  handover?: {
+    offer: (rows: BenchRow[], whenTaken: () => void) => void;
+    of: (id: string) => Handover | null;
+  };
 }
 
 const keys: Keys = [
@@ -86,10 +89,9 @@ export function Bench({ specs, search, handover }: Props) {
   };
   const pickedRows = rows.filter(({ id }) => picked.has(id));
   const unsent = (among: BenchRow[]) => among.filter((row) => row.handover === null);
-  const sendable =
-    unsent(pickedRows).length > 0
-      ? unsent(pickedRows)
-      : unsent(rows.filter(({ item }) => item.result !== null));
+  const sendable = unsent(
+    pickedRows.length > 0 ? pickedRows : rows.filter(({ item }) => item.result !== null),
+  );
   return (
     <>
       <DropSlip onFiles={take} low={items.length > 0} />
@@ -118,7 +120,11 @@ export function Bench({ specs, search, handover }: Props) {
                 </>
               )}
               {handover && sendable.length > 0 && (
-                <button type="button" className="btn btn-main" onClick={() => handover.offer(sendable)}>
+                <button
+                  type="button"
+                  className="btn btn-main"
+                  onClick={() => handover.offer(sendable, () => setPicked(new Set()))}
+                >
                   {sendable.length === 1 ? 'Upload this' : `Upload these ${sendable.length}`}
                 </button>
               )}

@@ -26,19 +26,24 @@ export default function BenchScreen(props: Props) {
 function Screen({ specs: own, channels, programmes, search }: Props) {
   const specs = useMemo(() => [...own, ...publishedSpecs], [own]);
   const { handOver, of } = useHandover(programmes);
-  const [offered, setOffered] = useState<BenchRow[] | null>(null);
+  const [offered, setOffered] = useState<{ rows: BenchRow[]; whenTaken: () => void } | null>(null);
   return (
     <>
-      <Bench specs={specs} search={search} handover={{ offer: setOffered, of }} />
+      <Bench
+        specs={specs}
+        search={search}
+        handover={{ offer: (rows, whenTaken) => setOffered({ rows, whenTaken }), of }}
+      />
       {offered && (
         <UploadDialog
-          rows={offered}
+          rows={offered.rows}
           channels={channels}
           onClose={() => setOffered(null)}
           onUpload={(channelIds) => {
             setOffered(null);
+            offered.whenTaken();
             handOver(
-              offered.map(({ item }) => item),
+              offered.rows.map(({ item }) => item),
               channelIds,
             );
           }}
