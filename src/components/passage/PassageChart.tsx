@@ -30,7 +30,11 @@ interface Props {
   onPlayFrom?: (seconds: number) => void;
   playing?: number | null;
   height?: number;
+  /** How the time axis is written: round times are those of seconds + offset. */
+  axis?: { offsetSeconds: number; label: (seconds: number) => string };
 }
+
+const plainAxis = { offsetSeconds: 0, label: formatDuration };
 
 const lowest = -48;
 /** Seconds: closer than this there is nothing more to see. */
@@ -49,6 +53,7 @@ export function PassageChart({
   onPlayFrom,
   playing = null,
   height = 340,
+  axis: timeAxis = plainAxis,
 }: Props) {
   const [colours, setColours] = useState<Colours | null>(null);
   const chart = useRef<ChartJs<'line'> | null>(null);
@@ -122,14 +127,17 @@ export function PassageChart({
           grid: { display: false },
           border: { color: colours?.ink },
           afterBuildTicks: (axis) => {
-            axis.ticks = timeTicks(axis.min, axis.max, axis.width).map((value) => ({ value }));
+            const { offsetSeconds: offset } = timeAxis;
+            axis.ticks = timeTicks(axis.min + offset, axis.max + offset, axis.width).map((value) => ({
+              value: value - offset,
+            }));
           },
           ticks: {
             autoSkip: false,
             color: colours?.muted,
             maxRotation: 0,
             font: { family: '"Sometype Mono Variable"', size: 11 },
-            callback: (value) => formatDuration(Number(value)),
+            callback: (value) => timeAxis.label(Number(value)),
           },
         },
         y: { min: lowest, max: top, display: false, ticks: { stepSize: 6 } },
@@ -153,7 +161,7 @@ export function PassageChart({
       },
     }),
     // What is shown is set once; from then on the chart's own zoom holds it.
-    [colours, length, top],
+    [colours, length, top, timeAxis.offsetSeconds],
   );
   const showAll = () => {
     // Not the plugin's reset: that goes back to the stretch which the address gave.

@@ -7,13 +7,15 @@ interface Props {
   passage: Passage;
   current: number | null;
   compact: boolean;
+  /** Writes a time of the measured stretch. */
+  timeOf?: (seconds: number) => string;
   /** Left out where nothing can be played: then a row only shows its place. */
   onPlay?: (excursion: Excursion) => void;
   onShow?: (excursion: Excursion) => void;
 }
 
 /** Where a limit is passed, by timecode: the flags of the chart as a list. */
-export function Excursions({ passage, current, compact, onPlay, onShow }: Props) {
+export function Excursions({ passage, current, compact, timeOf = formatTimecode, onPlay, onShow }: Props) {
   const { excursions } = passage;
   const [act, word] = onPlay ? [onPlay, 'Play'] : [onShow, 'Show'];
   if (excursions.length === 0)
@@ -43,7 +45,7 @@ export function Excursions({ passage, current, compact, onPlay, onShow }: Props)
                   </span>
                 </td>
                 <td>{curveName(one)}</td>
-                <td className="num">{formatTimecode(one.startSeconds)}</td>
+                <td className="num">{timeOf(one.startSeconds)}</td>
                 <td className="n num max-sm:hidden">{formatLevel(one.lengthSeconds)} s</td>
                 <td className={`n num font-semibold ${one.breach === 'reject' ? 'text-hull' : 'text-brass'}`}>
                   +{formatLevel(one.beyond)}

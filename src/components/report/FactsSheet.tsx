@@ -12,6 +12,8 @@ interface Props {
   fileName: string;
   byteSize?: number;
   sha256: string | null;
+  /** Writes a time of the measured stretch. */
+  timeOf?: (seconds: number) => string;
 }
 
 const Row = ({ name, children }: { name: string; children: React.ReactNode }) => (
@@ -21,13 +23,13 @@ const Row = ({ name, children }: { name: string; children: React.ReactNode }) =>
   </>
 );
 
-const at = (seconds: number | null) =>
-  seconds !== null && <span className="num block text-[12px] text-muted">at {formatTimecode(seconds)}</span>;
-
 /** Every figure and fact that stands, whatever a spec asks. */
-export function FactsSheet({ measurement, fileName, byteSize, sha256 }: Props) {
+export function FactsSheet({ measurement, fileName, byteSize, sha256, timeOf = formatTimecode }: Props) {
+  const at = (seconds: number | null) =>
+    seconds !== null && <span className="num block text-[12px] text-muted">at {timeOf(seconds)}</span>;
   const { format: f, figures, findings } = measurement;
   const { loudness: l, times } = figures;
+  const isWindow = Math.abs(f.durationSeconds - figures.measuredSeconds) > 0.01;
   const list = 'grid grid-cols-[auto_1fr] gap-x-4 gap-y-1 text-[13px]';
   return (
     <div className="grid min-w-0 gap-5">
@@ -100,6 +102,13 @@ export function FactsSheet({ measurement, fileName, byteSize, sha256 }: Props) {
           <Row name="Duration">
             <span className="num">{formatTimecode(f.durationSeconds)}</span>
           </Row>
+          {isWindow && (
+            <Row name="Measured">
+              <span className="num">
+                {timeOf(0)} to {timeOf(figures.measuredSeconds)}
+              </span>
+            </Row>
+          )}
           {byteSize !== undefined && <Row name="Size">{formatBytes(byteSize)}</Row>}
           <Row name="Engine">
             <span className="num">{measurement.engineVersion}</span>
@@ -119,7 +128,7 @@ export function FactsSheet({ measurement, fileName, byteSize, sha256 }: Props) {
               <li key={i}>
                 {finding.message}
                 {finding.atSeconds !== undefined && (
-                  <span className="num text-muted"> {formatTimecode(finding.atSeconds)}</span>
+                  <span className="num text-muted"> {timeOf(finding.atSeconds)}</span>
                 )}
               </li>
             ))}

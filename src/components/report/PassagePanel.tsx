@@ -8,6 +8,13 @@ import { draughtsOf } from '@/components/passage/draughts.ts';
 import { useAddressState } from '@/components/table/use-address-state.ts';
 import { passageSchema } from '@/domain/api/deliverables.ts';
 import { formatLevel } from '@/domain/figures-text.ts';
+import {
+  plainClock,
+  shortTimeInFile,
+  startSeconds,
+  timeInFile,
+  type FileClock,
+} from '@/domain/file-clock.ts';
 import type { SpecBody } from '@/domain/spec.ts';
 import { Excursions } from './Excursions.tsx';
 
@@ -16,6 +23,8 @@ interface Props {
   audioUrl: string;
   specBody: SpecBody | null;
   integratedLufs: number | null;
+  /** By which times of the file are written. */
+  clock?: FileClock;
   /** The page's search, so that a sent address shows the same stretch. */
   search: string;
   /** Lower chart for a side panel. */
@@ -42,7 +51,15 @@ function shownIn(params: URLSearchParams): [number, number] | null {
   return Number.isFinite(from) && Number.isFinite(to) && to > from ? [from, to] : null;
 }
 
-function Panel({ passageUrl, audioUrl, specBody, integratedLufs, search, compact = false }: Props) {
+function Panel({
+  passageUrl,
+  audioUrl,
+  specBody,
+  integratedLufs,
+  clock = plainClock,
+  search,
+  compact = false,
+}: Props) {
   const [params, change] = useAddressState(search);
   const [current, setCurrent] = useState<number | null>(null);
   const [playing, setPlaying] = useState<number | null>(null);
@@ -57,9 +74,12 @@ function Panel({ passageUrl, audioUrl, specBody, integratedLufs, search, compact
   useEffect(() => {
     if (audio.current) audio.current.volume = startVolume(integratedLufs);
   }, [integratedLufs]);
+  // The measured stretch may begin inside the file; what plays is the file.
+  const begins = passage.data?.windowStartSeconds ?? 0;
+  const timeOf = (seconds: number) => timeInFile(clock, begins + seconds);
   const playFrom = (seconds: number) => {
     if (!audio.current) return;
-    audio.current.currentTime = seconds;
+    audio.current.currentTime = begins + seconds;
     setPlaying(seconds);
     // A browser that cannot play says so through the element's error, below.
     void audio.current.play().catch(() => undefined);
@@ -92,6 +112,10 @@ function Panel({ passageUrl, audioUrl, specBody, integratedLufs, search, compact
             onPlayFrom={playFrom}
             playing={playing}
             height={compact ? 240 : 340}
+            axis={{
+              offsetSeconds: startSeconds(clock) + begins,
+              label: (seconds) => shortTimeInFile(clock, begins + seconds),
+            }}
           />
         ) : (
           <div style={{ height: compact ? 240 : 340 }} className="grid place-items-center text-muted">
@@ -107,7 +131,7 @@ function Panel({ passageUrl, audioUrl, specBody, integratedLufs, search, compact
           src={audioUrl}
           aria-label="The original"
           className="mt-2 h-9 w-full"
-          onTimeUpdate={(event) => setPlaying(event.currentTarget.currentTime)}
+          onTimeUpdate={(event) => setPlaying(event.currentTarget.currentTime - begins)}
           onEnded={() => setPlaying(null)}
           onError={() => setTrouble(true)}
         />
@@ -130,6 +154,7 @@ function Panel({ passageUrl, audioUrl, specBody, integratedLufs, search, compact
           passage={passage.data}
           current={current}
           compact={compact}
+          timeOf={timeOf}
           onPlay={(excursion) => (
             setCurrent(excursion.number),
             playFrom(Math.max(0, excursion.startSeconds - 1))

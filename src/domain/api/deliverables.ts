@@ -183,8 +183,15 @@ export const deliverableReportSchema = deliverableRowSchema.extend({
       isCurrent: z.boolean(),
     }),
   ),
-  /** Facts of the file as it was last measured by any plan, for choosing another one; `null` where it never was. */
-  knownFormat: formatSchema.nullable(),
+  /** The file as it was measured whole, or else by any plan, for choosing another one; `null` where it never was. */
+  file: z
+    .object({
+      format: formatSchema,
+      isOrderAssumed: z.boolean(),
+      /** Where a line-up tone at its head ends. */
+      lineUpToneEndSeconds: z.number().nullable(),
+    })
+    .nullable(),
   /** How it compares with what the bench measured before it was sent; `null` where no bench did. */
   bench: benchComparisonSchema.nullable(),
   specs: z.array(z.object({ specVersionId: idSchema, body: specBodySchema })),

@@ -1,6 +1,6 @@
 /** How deliverables are measured: plans are written once, and a deliverable names the one that holds now. */
-import type { z } from 'zod';
-import { formatSchema } from '../../domain/api/deliverables.ts';
+import { z } from 'zod';
+import { findingSchema, formatSchema } from '../../domain/api/deliverables.ts';
 import { measuringPlanSchema } from '../../domain/measuring-plan.ts';
 import { wholeFile, type MeasuringPlan } from '../../engine/plan.ts';
 import type { FrameRateName } from '../../engine/timecode.ts';
@@ -60,19 +60,24 @@ export async function countMeasured(
   return row?.count ?? 0;
 }
 
-/** Facts of the file as some plan has measured it, the whole file's own first; `null` where nothing ever was. */
-export async function findKnownFormat(
+/** The file as some plan has measured it, the whole file's own first; `null` where nothing ever was. */
+export async function findKnownFile(
   db: Db,
   scope: Scope,
   deliverableId: string,
-): Promise<z.infer<typeof formatSchema> | null> {
+): Promise<{
+  format: z.infer<typeof formatSchema>;
+  findings: z.infer<typeof findingSchema>[];
+} | null> {
   const row = await db('measurements as m')
     .join('presentations as pr', 'pr.id', 'm.presentation_id')
     .where('m.deliverable_id', deliverableId)
     .modify(within(scope, 'm.organisation_id'))
     .orderByRaw('pr.plan_id IS NULL DESC, m.created_at DESC, m.id DESC')
-    .first<{ format: unknown } | undefined>('m.format');
-  return row ? formatSchema.parse(row.format) : null;
+    .first<{ format: unknown; findings: unknown } | undefined>('m.format', 'm.findings');
+  return row
+    ? { format: formatSchema.parse(row.format), findings: z.array(findingSchema).parse(row.findings) }
+    : null;
 }
 
 /** Names the plan that holds now. With `again` the file waits to be measured, its starts uncounted; else what stands is kept. */

@@ -22,7 +22,7 @@ import {
   type DeliverableRecord,
 } from '../db/deliverables-repository.ts';
 import { listJudgedBodies } from '../db/judged-specs-repository.ts';
-import { findKnownFormat, listPlans, readPlan } from '../db/plans-repository.ts';
+import { findKnownFile, listPlans, readPlan } from '../db/plans-repository.ts';
 import { listPresentations, listPresentationVerdicts } from '../db/presentations-repository.ts';
 import { listProgrammes as listProgrammeRecords } from '../db/programmes-repository.ts';
 import { lockDeliverable, listSubmissionsOfDeliverable } from '../db/submission-making-repository.ts';
@@ -137,12 +137,12 @@ export async function getDeliverableReport(scope: Scope, id: string): Promise<An
   if (!row) return noDeliverable;
   const [{ measurement, sha256, uploadedBy, measuredAt, replaces, planId, frameRate }] = records;
   const versionIds = [...new Set(row.channels.flatMap((channel) => channel.specVersionId ?? []))];
-  const [presentations, verdicts, plan, plans, knownFormat] = await Promise.all([
+  const [presentations, verdicts, plan, plans, known] = await Promise.all([
     listPresentations(db(), scope, id),
     listPresentationVerdicts(db(), scope, id, versionIds),
     readPlan(db(), scope, planId),
     listPlans(db(), scope, id),
-    findKnownFormat(db(), scope, id),
+    findKnownFile(db(), scope, id),
   ]);
   return done({
     ...row,
@@ -160,7 +160,11 @@ export async function getDeliverableReport(scope: Scope, id: string): Promise<An
     plan,
     frameRate,
     plans: plans.map((one) => ({ ...one, createdAt: one.createdAt.toISOString() })),
-    knownFormat,
+    file: known && {
+      format: known.format,
+      isOrderAssumed: known.findings.some(({ code }) => code === 'layout-assumed'),
+      lineUpToneEndSeconds: lineUpToneEnd(known.findings),
+    },
     // A bench measures whole files.
     bench:
       measurement && planId === null
@@ -169,6 +173,12 @@ export async function getDeliverableReport(scope: Scope, id: string): Promise<An
     specs: measurement ? await listJudgedBodies(db(), scope, measurement.id, versionIds) : [],
     replaces,
   });
+}
+
+/** Where a line-up tone at the head ends, in seconds of the file. */
+function lineUpToneEnd(findings: DeliverableReport['presentations'][number]['measurement']['findings']) {
+  const tone = findings.find(({ code }) => code === 'line-up-tone');
+  return tone?.atSeconds === undefined ? null : tone.atSeconds + (tone.lengthSeconds ?? 0);
 }
 
 /** Sets details of many deliverables and judges them anew; each stands or falls by itself. */

@@ -11,7 +11,7 @@ import type { FrameRateName } from '../../engine/timecode.ts';
 import { recordEvent } from '../db/audit-repository.ts';
 import { inTransaction, type Db } from '../db/connection.ts';
 import { unjudge } from '../db/deliverable-details-repository.ts';
-import { countMeasured, ensurePlan, findKnownFormat, setCurrentPlan } from '../db/plans-repository.ts';
+import { countMeasured, ensurePlan, findKnownFile, setCurrentPlan } from '../db/plans-repository.ts';
 import {
   listSubmissionsOfDeliverable,
   lockDeliverable,
@@ -93,8 +93,9 @@ async function whyNotSo(
   id: string,
   plan: MeasuringPlan,
 ): Promise<Answer<never> | null> {
-  const format = await findKnownFormat(trx, scope, id);
-  if (!format) return null;
+  const known = await findKnownFile(trx, scope, id);
+  if (!known) return null;
+  const { format } = known;
   const streams = format.streams?.length ?? 1;
   if (plan.stream >= streams)
     return refuse(

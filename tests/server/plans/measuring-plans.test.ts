@@ -80,7 +80,7 @@ describe('a measuring plan', () => {
     expect(await report(id)).toMatchObject({
       measurement: null,
       presentations: [],
-      knownFormat: { channels: 6 },
+      file: { format: { channels: 6 }, isOrderAssumed: true },
     });
 
     expect(await measure(id)).toEqual({ kind: 'measured' });
