@@ -2,10 +2,18 @@
  * The judge: a measurement held against a spec version, rule by rule (MEASUREMENT, Verdicts). Pure and instant, so a new
  * version judges old measurements without measuring again.
  */
-import { findingCodes, type FindingCode, type Measurement } from '../engine/figures.ts';
+import { defaultSilence } from '../engine/facts/thresholds.ts';
+import {
+  integrityCodes,
+  signalCodes,
+  type Figures,
+  type FindingCode,
+  type Measurement,
+  type SignalFacts,
+} from '../engine/figures.ts';
 import { formatDuration, formatLevel, roundHalfAway } from './figures-text.ts';
 import { factText, limitsOf, metricWords, permittedText, ruleName } from './rule-words.ts';
-import type { RangeMetric, Rule, SpecBody } from './spec.ts';
+import type { RangeMetric, Rule, SignalMetric, SpecBody } from './spec.ts';
 import type { RuleVerdict, VerdictBody } from './verdict.ts';
 import type { OverallOutcome } from './vocabulary.ts';
 
@@ -20,7 +28,7 @@ const shortForRangeSeconds = 60;
 /** What a spec holds the file's integrity to where it says nothing itself: a file cut short is refused, the rest is told. */
 function impliedRules(body: SpecBody): Rule[] {
   const said = new Set<string>(body.rules.flatMap((rule) => (rule.kind === 'finding' ? [rule.code] : [])));
-  return findingCodes
+  return integrityCodes
     .filter((code) => !said.has(code))
     .map((code) => ({
       id: `integrity-${code}`,
@@ -31,10 +39,12 @@ function impliedRules(body: SpecBody): Rule[] {
     }));
 }
 
+const notLookedFor = 'not known: measured by an engine before 2.0.0';
+
 type Value = { figure: number } | { reason: string };
 const known = (figure: number | null, reason: string): Value => (figure === null ? { reason } : { figure });
 
-function valueOf(metric: RangeMetric, { figures }: Judged, body: SpecBody): Value {
+function valueOf(metric: RangeMetric, { figures, format }: Judged, body: SpecBody, rule: Rule): Value {
   const { loudness, truePeak, samplePeak } = figures;
   // Of the presentation: the file may hold more audio channels.
   const mono = truePeak.perChannelDbtp.length === 1 && body.mono === 'asDual';
@@ -69,6 +79,49 @@ function valueOf(metric: RangeMetric, { figures }: Judged, body: SpecBody): Valu
         : { figure: truePeak.maxDbtp - integrated };
     case 'durationSeconds':
       return { figure: figures.measuredSeconds };
+    case 'downmixIntegratedLufs':
+    case 'downmixTruePeakDbtp':
+      return downmixValue(metric, figures);
+    case 'bitRateKbps':
+      return known(format.bitRateKbps ?? null, 'no value: the file is not coded, or does not say');
+    default:
+      return figures.signal ? signalValue(metric, figures.signal, rule) : { reason: notLookedFor };
+  }
+}
+
+function downmixValue(metric: 'downmixIntegratedLufs' | 'downmixTruePeakDbtp', figures: Figures): Value {
+  if (!figures.downmix) return { reason: 'no value: nothing to mix down' };
+  return metric === 'downmixIntegratedLufs'
+    ? known(figures.downmix.integratedLufs, 'no value: below the gate')
+    : known(figures.downmix.truePeakDbtp, 'no value: digital silence');
+}
+
+/** A fact of the signal as a figure. */
+function signalValue(metric: SignalMetric, signal: SignalFacts, rule: Rule): Value {
+  const pair = 'no value: no left and right with signal';
+  const level = (rule.kind === 'limits' ? rule.silenceLevelDbfs : undefined) ?? defaultSilence.levelDbfs;
+  const silence = signal.silence.find(({ levelDbfs }) => levelDbfs === level);
+  switch (metric) {
+    case 'silenceHeadSeconds':
+      return known(silence?.headSeconds ?? null, 'not known at this level');
+    case 'silenceTailSeconds':
+      return known(silence?.tailSeconds ?? null, 'not known at this level');
+    case 'silenceInsideSeconds':
+      return known(silence?.longestInsideSeconds ?? null, 'not known at this level');
+    case 'dropOutCount':
+      return { figure: signal.dropOuts.count };
+    case 'clippedRunCount':
+      return { figure: signal.clipping.count };
+    case 'dcOffsetPercent':
+      return { figure: Math.max(0, ...signal.dcOffsetPercent.map(Math.abs)) };
+    case 'balanceLu':
+      return known(signal.stereo?.balanceLu ?? null, pair);
+    case 'correlationLowest':
+      return known(signal.stereo?.correlationLowest ?? null, pair);
+    case 'outOfPhasePercent':
+      return known(signal.stereo?.belowZeroPercent ?? null, pair);
+    case 'bandwidthHz':
+      return known(signal.bandwidthHz, 'no value: silence about 1 kHz');
   }
 }
 
@@ -93,6 +146,8 @@ function judgeRule(rule: Rule, judged: Judged, body: SpecBody): RuleVerdict {
   const breached = rule.breach === 'reject' ? ('fail' as const) : ('advisory' as const);
   switch (rule.kind) {
     case 'finding': {
+      if (!judged.figures.signal && (signalCodes as readonly string[]).includes(rule.code))
+        return { ...frame, metric: integrityMetric, ...notJudged(notLookedFor) };
       const found = judged.findings.find((finding) => finding.code === rule.code);
       return {
         ...frame,
@@ -136,7 +191,7 @@ function judgeFigure(
   const metric = rule.kind === 'integrated' ? 'integratedLufs' : rule.metric;
   const words = metricWords(metric, body.unit);
   const withMetric = { ...frame, metric, unit: words.unit };
-  const value = valueOf(metric, judged, body);
+  const value = valueOf(metric, judged, body, rule);
   if ('reason' in value) return { ...withMetric, ...notJudged(value.reason) };
   if (
     rule.kind === 'limits' &&
@@ -152,7 +207,8 @@ function judgeFigure(
     };
 
   // Levels are shown to one decimal, times to the millisecond; the figure as shown is the one that is judged.
-  const decimals = metric === 'durationSeconds' ? 3 : 1;
+  const { decimals } = words;
+  const shown = body.rounding === 'shown' || decimals !== 1 ? decimals : 2;
   const figure = body.rounding === 'shown' ? roundHalfAway(value.figure, decimals) : value.figure;
   const margin = marginOf(figure, frame.atLeast, frame.atMost);
   const inside = margin >= 0;
@@ -164,13 +220,10 @@ function judgeFigure(
     outcome,
     judged: figure,
     measured: value.figure,
-    judgedText:
-      metric === 'durationSeconds'
-        ? formatDuration(figure)
-        : formatLevel(figure, body.rounding === 'shown' ? 1 : 2),
+    judgedText: metric === 'durationSeconds' ? formatDuration(figure) : formatLevel(figure, shown),
     margin,
     marginText:
-      marginText(figure, margin, frame, words.marginUnit, body.rounding) +
+      marginText(figure, margin, frame, words.marginUnit, metric === 'durationSeconds' ? 1 : shown) +
       (excused ? ', within the tolerance of measurement' : ''),
     neededTolerance: excused,
   };
@@ -187,8 +240,8 @@ function marginText(
   figure: number,
   margin: number,
   { atLeast, atMost }: { atLeast: number | null; atMost: number | null },
-  unit: 'LU' | 'dB' | 's',
-  rounding: SpecBody['rounding'],
+  unit: ReturnType<typeof metricWords>['marginUnit'],
+  decimals: number,
 ): string {
   const side =
     margin >= 0
@@ -200,11 +253,16 @@ function marginText(
           : 'over';
   const distance = Math.abs(margin);
   if (margin >= 0 && distance === 0) return 'on the limit';
-  return `${formatLevel(distance, rounding === 'shown' ? 1 : 2)} ${unit} ${side}`;
+  return `${formatLevel(distance, decimals)}${unit === '' ? '' : ` ${unit}`} ${side}`;
 }
 
-function factOf(fact: Extract<Rule, { kind: 'oneOf' }>['fact'], { format }: Judged): string | null {
+function factOf(fact: Extract<Rule, { kind: 'oneOf' }>['fact'], { format, figures }: Judged): string | null {
   switch (fact) {
+    case 'effectiveBitDepth':
+      return figures.signal?.effectiveBitDepth?.toString() ?? null;
+    case 'frameRate':
+    case 'startTimecode':
+      return format[fact] ?? null;
     case 'sampleRateHz':
       return String(format.sampleRateHz);
     case 'bitDepth':
@@ -243,9 +301,9 @@ function rank(rule: RuleVerdict): [number, number, number] {
           : 2
       : levels
         ? 1
-        : rule.unit === 's'
-          ? 2
-          : 0;
+        : rule.metric === null || rule.metric === integrityMetric
+          ? 0
+          : 2;
   return [byOutcome, kind, rule.margin ?? 0];
 }
 
@@ -255,12 +313,13 @@ const before = (a: RuleVerdict, b: RuleVerdict): number => {
 };
 
 function nearestText(rule: RuleVerdict): string {
-  const short = rule.unit === '' ? rule.name.toLowerCase() : metricWords(rule.metric as RangeMetric).short;
+  const isFact = rule.metric === null || rule.metric === integrityMetric;
+  const short = isFact ? rule.name.toLowerCase() : metricWords(rule.metric as RangeMetric).short;
   const advised = rule.outcome === 'advisory' ? ', advised' : '';
   if (rule.metric === integrityMetric)
     return rule.outcome === 'pass' ? 'nothing found' : `${short}${advised}`;
   if (rule.outcome === 'not_judged') return `${short} not judged`;
-  if (rule.unit === '')
+  if (isFact)
     return rule.outcome === 'pass'
       ? `${short} as asked`
       : `${short} ${rule.judgedText}, not as asked${advised}`;

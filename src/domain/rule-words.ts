@@ -1,5 +1,5 @@
 /** What rules and their metrics are called, in the trade's words. */
-import { formatDuration, formatLimit, formatRate } from './figures-text.ts';
+import { formatDuration, formatLevel, formatLimit, formatRate } from './figures-text.ts';
 import type { FindingCode } from '../engine/figures.ts';
 import type { RangeMetric, Rule, SpecBody } from './spec.ts';
 import type { Unit } from './verdict.ts';
@@ -9,19 +9,112 @@ interface MetricWords {
   /** As it stands in one line of a table. */
   short: string;
   unit: Unit;
-  /** The unit of a distance. */
-  marginUnit: 'LU' | 'dB' | 's';
+  /** The unit of a distance; empty where it is a plain number. */
+  marginUnit: 'LU' | 'dB' | 's' | '%' | 'Hz' | 'kbit/s' | '';
+  /** Decimals of the figure as shown. */
+  decimals: number;
 }
 
 const metrics: Record<RangeMetric, MetricWords> = {
-  integratedLufs: { name: 'Integrated loudness', short: 'integrated', unit: 'LUFS', marginUnit: 'LU' },
-  truePeakDbtp: { name: 'Maximum true peak', short: 'true peak', unit: 'dBTP', marginUnit: 'dB' },
-  samplePeakDbfs: { name: 'Maximum sample peak', short: 'sample peak', unit: 'dBFS', marginUnit: 'dB' },
-  rangeLu: { name: 'Loudness range', short: 'range', unit: 'LU', marginUnit: 'LU' },
-  shortTermMaxLufs: { name: 'Maximum short-term', short: 'short-term', unit: 'LUFS', marginUnit: 'LU' },
-  momentaryMaxLufs: { name: 'Maximum momentary', short: 'momentary', unit: 'LUFS', marginUnit: 'LU' },
-  peakToLoudnessLu: { name: 'PLR', short: 'PLR', unit: 'LU', marginUnit: 'LU' },
-  durationSeconds: { name: 'Duration', short: 'duration', unit: 's', marginUnit: 's' },
+  integratedLufs: {
+    name: 'Integrated loudness',
+    short: 'integrated',
+    unit: 'LUFS',
+    marginUnit: 'LU',
+    decimals: 1,
+  },
+  truePeakDbtp: {
+    name: 'Maximum true peak',
+    short: 'true peak',
+    unit: 'dBTP',
+    marginUnit: 'dB',
+    decimals: 1,
+  },
+  samplePeakDbfs: {
+    name: 'Maximum sample peak',
+    short: 'sample peak',
+    unit: 'dBFS',
+    marginUnit: 'dB',
+    decimals: 1,
+  },
+  rangeLu: { name: 'Loudness range', short: 'range', unit: 'LU', marginUnit: 'LU', decimals: 1 },
+  shortTermMaxLufs: {
+    name: 'Maximum short-term',
+    short: 'short-term',
+    unit: 'LUFS',
+    marginUnit: 'LU',
+    decimals: 1,
+  },
+  momentaryMaxLufs: {
+    name: 'Maximum momentary',
+    short: 'momentary',
+    unit: 'LUFS',
+    marginUnit: 'LU',
+    decimals: 1,
+  },
+  peakToLoudnessLu: { name: 'PLR', short: 'PLR', unit: 'LU', marginUnit: 'LU', decimals: 1 },
+  durationSeconds: { name: 'Duration', short: 'duration', unit: 's', marginUnit: 's', decimals: 3 },
+  downmixIntegratedLufs: {
+    name: 'Integrated loudness of the stereo downmix',
+    short: 'downmix integrated',
+    unit: 'LUFS',
+    marginUnit: 'LU',
+    decimals: 1,
+  },
+  downmixTruePeakDbtp: {
+    name: 'Maximum true peak of the stereo downmix',
+    short: 'downmix true peak',
+    unit: 'dBTP',
+    marginUnit: 'dB',
+    decimals: 1,
+  },
+  silenceHeadSeconds: {
+    name: 'Silence at the head',
+    short: 'silence at the head',
+    unit: 's',
+    marginUnit: 's',
+    decimals: 2,
+  },
+  silenceTailSeconds: {
+    name: 'Silence at the tail',
+    short: 'silence at the tail',
+    unit: 's',
+    marginUnit: 's',
+    decimals: 2,
+  },
+  silenceInsideSeconds: {
+    name: 'Longest silence inside',
+    short: 'silence inside',
+    unit: 's',
+    marginUnit: 's',
+    decimals: 2,
+  },
+  dropOutCount: { name: 'Drop-outs', short: 'drop-outs', unit: '', marginUnit: '', decimals: 0 },
+  clippedRunCount: { name: 'Clipped runs', short: 'clipped runs', unit: '', marginUnit: '', decimals: 0 },
+  dcOffsetPercent: { name: 'DC offset', short: 'DC offset', unit: '%', marginUnit: '%', decimals: 2 },
+  balanceLu: {
+    name: 'Balance, left over right',
+    short: 'balance',
+    unit: 'LU',
+    marginUnit: 'LU',
+    decimals: 2,
+  },
+  correlationLowest: {
+    name: 'Lowest correlation',
+    short: 'correlation',
+    unit: '',
+    marginUnit: '',
+    decimals: 2,
+  },
+  outOfPhasePercent: {
+    name: 'Time out of phase',
+    short: 'time out of phase',
+    unit: '%',
+    marginUnit: '%',
+    decimals: 1,
+  },
+  bandwidthHz: { name: 'Bandwidth', short: 'bandwidth', unit: 'Hz', marginUnit: 'Hz', decimals: 0 },
+  bitRateKbps: { name: 'Bit rate', short: 'bit rate', unit: 'kbit/s', marginUnit: 'kbit/s', decimals: 0 },
 };
 
 /** Words of a metric; loudness in LKFS where the spec writes it so. */
@@ -33,10 +126,13 @@ export function metricWords(metric: RangeMetric, unit: SpecBody['unit'] = 'LUFS'
 export const factNames = {
   sampleRateHz: 'Sample rate',
   bitDepth: 'Bit depth',
+  effectiveBitDepth: 'Bits in use',
   layout: 'Layout',
   container: 'Container',
   codec: 'Codec',
   audioChannels: 'Audio channels',
+  frameRate: 'Frame rate',
+  startTimecode: 'Start timecode',
 } as const;
 
 export const findingNames: Record<FindingCode, string> = {
@@ -46,12 +142,26 @@ export const findingNames: Record<FindingCode, string> = {
   'unreadable-part': 'Unreadable part',
   'layout-assumed': 'Layout not told',
   'measured-differently': 'Measured differently',
+  silence: 'Silence',
+  'drop-out': 'Drop-out',
+  clipping: 'Clipping',
+  'flat-top': 'Flat tops',
+  'dc-offset': 'DC offset beyond 0.5 %',
+  balance: 'Out of balance',
+  correlation: 'Left against right',
+  'dual-mono': 'The same left and right',
+  'silent-audio-channel': 'Silent audio channel',
+  'suspect-order': 'Suspect order',
+  bandwidth: 'Narrow band',
+  'line-up-tone': 'Line-up tone',
+  'unused-bits': 'Unused bits',
+  'declared-differs': 'Declared loudness differs',
 };
 
 /** A fact's value in words: '48 kHz', '24 bit', '5.1'. */
 export function factText(fact: keyof typeof factNames, value: string): string {
   if (fact === 'sampleRateHz') return formatRate(Number(value));
-  if (fact === 'bitDepth') return `${value} bit`;
+  if (fact === 'bitDepth' || fact === 'effectiveBitDepth') return `${value} bit`;
   return value;
 }
 
@@ -95,11 +205,17 @@ export function permittedText(rule: Rule, unit: SpecBody['unit'] = 'LUFS'): stri
     }
     case 'limits': {
       const words = metricWords(rule.metric, unit);
-      const text = (value: number) =>
-        rule.metric === 'durationSeconds' ? formatDuration(value) : `${formatLimit(value)} ${words.unit}`;
-      if (rule.atLeast === null) return `at most ${text(rule.atMost ?? 0)}`;
-      if (rule.atMost === null) return `at least ${text(rule.atLeast)}`;
-      return `${rule.metric === 'durationSeconds' ? text(rule.atLeast) : formatLimit(rule.atLeast)} to ${text(rule.atMost)}`;
+      const number = (value: number) =>
+        rule.metric === 'durationSeconds'
+          ? formatDuration(value)
+          : words.decimals === 0
+            ? formatLevel(value, 0)
+            : formatLimit(value);
+      const unitOf = rule.metric === 'durationSeconds' || words.unit === '' ? '' : ` ${words.unit}`;
+      const under = rule.silenceLevelDbfs ? `, under ${formatLevel(rule.silenceLevelDbfs, 0)} dBFS` : '';
+      if (rule.atLeast === null) return `at most ${number(rule.atMost ?? 0)}${unitOf}${under}`;
+      if (rule.atMost === null) return `at least ${number(rule.atLeast)}${unitOf}${under}`;
+      return `${number(rule.atLeast)} to ${number(rule.atMost)}${unitOf}${under}`;
     }
     case 'oneOf':
       return rule.allowed.map((value) => factText(rule.fact, value)).join(' or ');

@@ -1,5 +1,6 @@
 /** The rule model of a spec version: what is permitted of each metric, and what a breach means. */
 import { z } from 'zod';
+import { silenceLevelsDbfs } from '../engine/facts/thresholds.ts';
 import { findingCodes } from '../engine/figures.ts';
 
 /** What a breach means: the delivery is refused, or the supplier is told. */
@@ -15,6 +16,21 @@ const ruleBase = {
 };
 const lufs = z.number().min(-70).max(5);
 
+/** Facts of the signal that are figures. */
+export const signalMetrics = [
+  'silenceHeadSeconds',
+  'silenceTailSeconds',
+  'silenceInsideSeconds',
+  'dropOutCount',
+  'clippedRunCount',
+  'dcOffsetPercent',
+  'balanceLu',
+  'correlationLowest',
+  'outOfPhasePercent',
+  'bandwidthHz',
+] as const;
+export type SignalMetric = (typeof signalMetrics)[number];
+
 /** Numeric metrics that are judged against a lower and an upper limit, either of which may be open. */
 export const rangeMetrics = [
   'integratedLufs',
@@ -25,6 +41,10 @@ export const rangeMetrics = [
   'momentaryMaxLufs',
   'peakToLoudnessLu',
   'durationSeconds',
+  'downmixIntegratedLufs',
+  'downmixTruePeakDbtp',
+  'bitRateKbps',
+  ...signalMetrics,
 ] as const;
 export type RangeMetric = (typeof rangeMetrics)[number];
 
@@ -46,6 +66,8 @@ export const limitsRuleSchema = z
     atMost: z.number().min(-200).max(1_000_000).nullable(),
     /** Loudness range of under 60 s of programme is not judged (R 128 s1) unless the spec insists. */
     judgeShortProgrammes: z.boolean().default(false),
+    /** Of the rules on silence: the level under which every audio channel counts as silent; absent: -60 dBFS. */
+    silenceLevelDbfs: z.union(silenceLevelsDbfs.map((level) => z.literal(level))).optional(),
   })
   .refine((r) => r.atLeast !== null || r.atMost !== null, {
     message: 'Give a lower limit, an upper limit, or both.',
@@ -58,11 +80,21 @@ export const limitsRuleSchema = z
 export const oneOfRuleSchema = z.object({
   ...ruleBase,
   kind: z.literal('oneOf'),
-  fact: z.enum(['sampleRateHz', 'bitDepth', 'layout', 'container', 'codec', 'audioChannels']),
+  fact: z.enum([
+    'sampleRateHz',
+    'bitDepth',
+    'effectiveBitDepth',
+    'layout',
+    'container',
+    'codec',
+    'audioChannels',
+    'frameRate',
+    'startTimecode',
+  ]),
   allowed: z.array(z.string().min(1).max(40)).min(1).max(30),
 });
 
-/** A finding of the file's integrity that must not be there. */
+/** A finding of the file's integrity or of the signal that must not be there. */
 export const findingRuleSchema = z.object({
   ...ruleBase,
   kind: z.literal('finding'),
@@ -94,7 +126,7 @@ export const specBodySchema = z
       })
       .nullable()
       .default(null),
-    rules: z.array(ruleSchema).min(1).max(40),
+    rules: z.array(ruleSchema).min(1).max(60),
   })
   .refine((s) => new Set(s.rules.map((r) => r.id)).size === s.rules.length, {
     message: 'Two rules have the same id.',

@@ -3,7 +3,7 @@ import { z } from 'zod';
 import { breachSchema } from './spec.ts';
 import { outcomeSchema, overallOutcomeSchema } from './vocabulary.ts';
 
-export const unitSchema = z.enum(['LUFS', 'LKFS', 'LU', 'dBTP', 'dBFS', 's', '']);
+export const unitSchema = z.enum(['LUFS', 'LKFS', 'LU', 'dBTP', 'dBFS', 's', '%', 'Hz', 'kbit/s', '']);
 export type Unit = z.infer<typeof unitSchema>;
 
 export const ruleVerdictSchema = z.object({

@@ -61,7 +61,8 @@ export interface Finding {
   audioChannel?: number;
 }
 
-export const findingCodes = [
+/** Of the file's integrity: rules of every spec, whether it says so or not. */
+export const integrityCodes = [
   'truncated', // less audio than the header promises
   'size-lies', // a header size is 0, 0xFFFFFFFF without ds64, or larger/smaller than the file
   'not-a-number', // NaN or infinite float samples, measured as silence
@@ -69,6 +70,26 @@ export const findingCodes = [
   'layout-assumed', // the file does not say its layout; the usual order was assumed
   'measured-differently', // the bench that sent the file had other figures than the service
 ] as const;
+
+/** Of the signal, by the defaults of facts/thresholds.ts: told, and a rule where a spec makes it one. */
+export const signalCodes = [
+  'silence',
+  'drop-out',
+  'clipping',
+  'flat-top',
+  'dc-offset',
+  'balance',
+  'correlation',
+  'dual-mono',
+  'silent-audio-channel',
+  'suspect-order',
+  'bandwidth',
+  'line-up-tone',
+  'unused-bits',
+  'declared-differs',
+] as const;
+
+export const findingCodes = [...integrityCodes, ...signalCodes] as const;
 export type FindingCode = (typeof findingCodes)[number];
 
 export interface Loudness {
@@ -104,6 +125,73 @@ export interface Figures {
   windowStartSeconds?: number;
   /** 5.1 heard in stereo (ITU-R BS.775-4, Annex 4, Table 2); only where the presentation has surrounds. */
   downmix?: { integratedLufs: number | null; truePeakDbtp: number | null };
+  /** Missing in measurements of engines before 2.0.0. */
+  signal?: SignalFacts;
+}
+
+/** Seconds from the start of what was measured. */
+export interface Stretch {
+  atSeconds: number;
+  lengthSeconds: number;
+}
+export interface ChannelStretch extends Stretch {
+  audioChannel: number;
+}
+/** How many there are, and the first of them. */
+export interface Places {
+  count: number;
+  listed: ChannelStretch[];
+}
+export interface Clipping extends Places {
+  longestSamples: number;
+}
+
+/** Silence by one level: every audio channel's RMS of 10 ms under it. */
+export interface SilenceAt {
+  levelDbfs: number;
+  headSeconds: number;
+  tailSeconds: number;
+  /** Neither at the head nor at the tail. */
+  longestInsideSeconds: number;
+  longestInsideAtSeconds: number | null;
+}
+
+export interface StereoFacts {
+  /** K-weighted loudness of left over right; `null` where one is silent. */
+  balanceLu: number | null;
+  /** Over windows of 3 s; `null` where none holds signal on both sides. */
+  correlationLowest: number | null;
+  correlationLowestAtSeconds: number | null;
+  belowZeroPercent: number | null;
+  dualMono: boolean | null;
+}
+
+export interface LineUpTone {
+  hz: number;
+  /** A sine at full scale is 0 dBFS. */
+  levelDbfs: number;
+  startSeconds: number;
+  endSeconds: number;
+}
+
+export type SuspectOrder = 'lfe-full-band' | 'centre-silent';
+
+/** Facts of the signal, by the definitions of facts/. */
+export interface SignalFacts {
+  silence: SilenceAt[];
+  dropOuts: Places;
+  clipping: Clipping;
+  flatTops: Clipping;
+  /** By audio channel, of full scale, with its sign. */
+  dcOffsetPercent: number[];
+  /** Only where the presentation has a left and a right. */
+  stereo?: StereoFacts;
+  silentAudioChannels: number[];
+  suspectOrder: SuspectOrder | null;
+  bandwidthHz: number | null;
+  lineUpTone: LineUpTone | null;
+  /** Of integer samples: bits from the top down to the lowest in use. */
+  effectiveBitDepth: number | null;
 }
 
 /** One measurement of one presentation. */

@@ -1,5 +1,7 @@
 /** One whole measurement: a source of frames in; figures, findings and series of each presentation out. */
-import type { Measurement, MeasurementSeries } from './figures.ts';
+import { signalFindings } from './facts/findings.ts';
+import { SignalObserver } from './facts/signal-facts.ts';
+import type { Figures, Measurement, MeasurementSeries } from './figures.ts';
 import { fromSpeakers } from './layouts.ts';
 import { Meter, type Twin } from './meter.ts';
 import { wholeFile, wholeLayout, type MeasuringPlan, type Presentation } from './plan.ts';
@@ -40,9 +42,9 @@ export async function measure(
   const last = end ?? source.secondsTotal;
   const secondsTotal =
     last === null ? null : Math.max(0, Math.min(last, source.secondsTotal ?? last) - start);
-  const parts = (plan.presentations ?? [wholeLayout(source.layout)]).map((presentation) => ({
-    presentation,
-    meter: new Meter(
+  const parts = (plan.presentations ?? [wholeLayout(source.layout)]).map((presentation) => {
+    const observer = new SignalObserver({ sampleRateHz: rate, speakers: presentation.speakers });
+    const meter = new Meter(
       {
         sampleRateHz: rate,
         encoding: source.encoding,
@@ -50,10 +52,12 @@ export async function measure(
         audioChannels: presentation.audioChannels,
         speakers: presentation.speakers,
         secondsTotal,
+        observers: [observer],
       },
       twin,
-    ),
-  }));
+    );
+    return { presentation, observer, meter };
+  });
   let done = 0;
   for await (const { bytes, frames } of source.blocks(signal, window)) {
     for (const { meter } of parts) meter.process(bytes, frames);
@@ -67,8 +71,16 @@ export async function measure(
         ? 'The measured window holds not one sample of audio: it begins behind the end of the file.'
         : 'The file holds not one sample of audio.',
     );
-  return parts.map(({ presentation, meter }) => {
-    const { figures, series, findings } = meter.result();
+  return parts.map(({ presentation, observer, meter }) => {
+    const { series, findings, usedBits, means, ...rest } = meter.result();
+    const { facts, silences } = observer.result({
+      usedBits,
+      means,
+      samplePeaksDbfs: rest.figures.samplePeak.perChannelDbfs,
+    });
+    const figures: Figures = { ...rest.figures, windowStartSeconds: start, signal: facts };
+    const { speakers } = presentation;
+    const { bitDepth, declaredLoudness } = format;
     return {
       presentation,
       measurement: {
@@ -77,11 +89,12 @@ export async function measure(
           layout: plan.presentations ? fromSpeakers(presentation.speakers).name : format.layout,
           durationSeconds: plan.window ? (source.secondsTotal ?? 0) : done / rate,
         },
-        figures: { ...figures, windowStartSeconds: start },
+        figures,
         findings: [
           // Nothing is assumed where the plan says it.
           ...source.findings.filter(({ code }) => !plan.presentations || code !== 'layout-assumed'),
           ...findings,
+          ...signalFindings({ figures, facts, silences, speakers, bitDepth, declaredLoudness }),
         ],
       },
       series,

@@ -17,7 +17,27 @@ const oneSided: Record<string, { cell: [number, number]; row: [number, number] }
   samplePeakDbfs: { cell: [3.5, 2.5], row: [11, 4] },
   rangeLu: { cell: [10, 6], row: [18, 12] },
   durationSeconds: { cell: [60, 60], row: [120, 60] },
+  silenceHeadSeconds: { cell: [2, 2], row: [4, 4] },
+  silenceTailSeconds: { cell: [2, 2], row: [4, 4] },
+  silenceInsideSeconds: { cell: [2, 2], row: [4, 4] },
+  dcOffsetPercent: { cell: [0.5, 0.5], row: [1, 1] },
+  correlationLowest: { cell: [1, 0.7], row: [1.3, 0.7] },
+  outOfPhasePercent: { cell: [5, 10], row: [5, 20] },
+  bandwidthHz: { cell: [4000, 6000], row: [6000, 8000] },
+  bitRateKbps: { cell: [128, 64], row: [256, 128] },
 };
+/** Figures that are never negative. */
+const fromZero = new Set([
+  ...['rangeLu', 'durationSeconds', 'silenceHeadSeconds', 'silenceTailSeconds', 'silenceInsideSeconds'],
+  ...[
+    'dropOutCount',
+    'clippedRunCount',
+    'dcOffsetPercent',
+    'outOfPhasePercent',
+    'bandwidthHz',
+    'bitRateKbps',
+  ],
+]);
 const otherwise = { cell: [5, 3.5], row: [9, 6] } as const;
 
 const round = (value: number) => Math.round(value * 100) / 100;
@@ -25,7 +45,8 @@ const round = (value: number) => Math.round(value * 100) / 100;
 /** Ticks at the limits and at round steps that stand clear of them. */
 function ticksOf(min: number, max: number, limits: Limits): number[] {
   const span = max - min;
-  const step = [0.5, 1, 2, 3, 5, 10, 20, 30, 60, 120, 300, 600, 1800].find((s) => span / s <= 6) ?? span / 4;
+  const step =
+    [0.5, 1, 2, 3, 5, 10, 20, 30, 60, 120, 300, 600, 1800, 5000].find((s) => span / s <= 6) ?? span / 4;
   const fixed = [limits.atLeast, limits.atMost].filter((limit): limit is number => limit !== null);
   const steps: number[] = [];
   for (let t = Math.ceil(min / step) * step; t <= max + 1e-9; t += step)
@@ -51,7 +72,7 @@ export function scaleOf(metric: string, limits: Limits, size: 'cell' | 'row'): S
         ? [atMost - inside, atMost + beyond]
         : [(atLeast ?? 0) - beyond, (atLeast ?? 0) + inside];
   }
-  if (metric === 'rangeLu' || metric === 'durationSeconds') min = Math.max(0, min);
+  if (fromZero.has(metric)) min = Math.max(0, min);
   [min, max] = [round(min), round(max)];
   return { min, max, ticks: ticksOf(min, max, limits) };
 }

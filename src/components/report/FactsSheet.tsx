@@ -1,6 +1,7 @@
 import { Figure } from '@/components/look/Figure.tsx';
 import type { DeliverableReport } from '@/domain/api/deliverables.ts';
-import { formatBytes, formatRate, formatTimecode } from '@/domain/figures-text.ts';
+import { formatBytes, formatLevel, formatRate, formatTimecode } from '@/domain/figures-text.ts';
+import { defaultSilence } from '@/engine/facts/thresholds.ts';
 
 /** What the sheet reads of a measurement: the bench's has no row. */
 type Measured = Pick<
@@ -22,6 +23,81 @@ const Row = ({ name, children }: { name: string; children: React.ReactNode }) =>
     <dd className="text-right">{children}</dd>
   </>
 );
+
+type Figures = Measured['figures'];
+
+/** Facts of the signal; where a spec has a say in them its rules tell. */
+function SignalSheet({
+  signal,
+  downmix,
+  at,
+  list,
+}: {
+  signal: NonNullable<Figures['signal']>;
+  downmix: Figures['downmix'];
+  /** Writes a time of the programme under a figure. */
+  at: (seconds: number | null) => React.ReactNode;
+  list: string;
+}) {
+  const silence = signal.silence.find(({ levelDbfs }) => levelDbfs === defaultSilence.levelDbfs);
+  const { stereo } = signal;
+  const offset = Math.max(0, ...signal.dcOffsetPercent.map(Math.abs));
+  return (
+    <section className="sheet p-4">
+      <h2 className="mb-2 text-[13px] font-semibold">The signal</h2>
+      <dl className={list}>
+        {silence && (
+          <Row name={`Silence under ${formatLevel(silence.levelDbfs, 0)} dBFS`}>
+            <span className="num">
+              {silence.headSeconds.toFixed(2)} s at the head, {silence.tailSeconds.toFixed(2)} s at the tail
+            </span>
+            <span className="num block">{silence.longestInsideSeconds.toFixed(2)} s inside</span>
+            {silence.longestInsideSeconds > 0 && at(silence.longestInsideAtSeconds)}
+          </Row>
+        )}
+        <Row name="Drop-outs">
+          <span className="num">{signal.dropOuts.count}</span>
+        </Row>
+        <Row name="Clipped runs">
+          <span className="num">
+            {signal.clipping.count}
+            {signal.clipping.count > 0 && `, the longest of ${signal.clipping.longestSamples} samples`}
+          </span>
+        </Row>
+        <Row name="DC offset">
+          <Figure value={offset} unit="%" decimals={2} />
+        </Row>
+        {stereo && (
+          <>
+            <Row name="Balance, left over right">
+              <Figure value={stereo.balanceLu} unit="LU" decimals={2} />
+            </Row>
+            <Row name="Lowest correlation">
+              <Figure value={stereo.correlationLowest} decimals={2} />
+              {at(stereo.correlationLowestAtSeconds)}
+            </Row>
+            <Row name="Time out of phase">
+              <Figure value={stereo.belowZeroPercent} unit="%" />
+            </Row>
+          </>
+        )}
+        <Row name="Bandwidth">
+          <Figure value={signal.bandwidthHz === null ? null : signal.bandwidthHz / 1000} unit="kHz" />
+        </Row>
+        {downmix && (
+          <>
+            <Row name="Stereo downmix, integrated">
+              <Figure value={downmix.integratedLufs} unit="LUFS" />
+            </Row>
+            <Row name="Stereo downmix, true peak">
+              <Figure value={downmix.truePeakDbtp} unit="dBTP" />
+            </Row>
+          </>
+        )}
+      </dl>
+    </section>
+  );
+}
 
 /** Every figure and fact that stands, whatever a spec asks. */
 export function FactsSheet({ measurement, fileName, byteSize, sha256, timeOf = formatTimecode }: Props) {
@@ -83,6 +159,9 @@ export function FactsSheet({ measurement, fileName, byteSize, sha256, timeOf = f
           </Row>
         </dl>
       </section>
+      {figures.signal && (
+        <SignalSheet signal={figures.signal} downmix={figures.downmix} at={at} list={list} />
+      )}
       <section className="sheet p-4">
         <h2 className="mb-2 text-[13px] font-semibold">The file</h2>
         <dl className={list}>
@@ -95,7 +174,12 @@ export function FactsSheet({ measurement, fileName, byteSize, sha256, timeOf = f
           <Row name="Sample rate, depth">
             {formatRate(f.sampleRateHz)}
             {f.bitDepth !== null && `, ${f.bitDepth} bit`}
+            {figures.signal?.effectiveBitDepth != null &&
+              f.bitDepth !== null &&
+              figures.signal.effectiveBitDepth < f.bitDepth &&
+              `, ${figures.signal.effectiveBitDepth} in use`}
           </Row>
+          {f.bitRateKbps != null && <Row name="Bit rate">{f.bitRateKbps} kbit/s</Row>}
           <Row name="Layout">
             {f.layout} ({f.channels})
           </Row>
@@ -107,6 +191,19 @@ export function FactsSheet({ measurement, fileName, byteSize, sha256, timeOf = f
               <span className="num">
                 {timeOf(0)} to {timeOf(figures.measuredSeconds)}
               </span>
+            </Row>
+          )}
+          {f.startTimecode && (
+            <Row name="Start timecode">
+              <span className="num">{f.startTimecode}</span>
+            </Row>
+          )}
+          {f.frameRate && <Row name="Frame rate">{f.frameRate}</Row>}
+          {f.trackNames && <Row name="Tracks">{f.trackNames.filter((name) => name !== '').join(', ')}</Row>}
+          {f.declaredLoudness && (
+            <Row name="Declared in the file">
+              <Figure value={f.declaredLoudness.integratedLufs} unit="LUFS" />,{' '}
+              <Figure value={f.declaredLoudness.truePeakDbtp} unit="dBTP" />
             </Row>
           )}
           {byteSize !== undefined && <Row name="Size">{formatBytes(byteSize)}</Row>}

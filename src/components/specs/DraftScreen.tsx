@@ -6,8 +6,10 @@ import { ApiProvider } from '@/components/live/ApiProvider.tsx';
 import { Field } from '@/components/look/Field.tsx';
 import { Notice } from '@/components/look/Notice.tsx';
 import { specDetailSchema, type SpecDetail } from '@/domain/api/specs.ts';
+import { signalMetrics } from '@/domain/spec.ts';
 import { monoText, roundingText } from '@/domain/spec-changes.ts';
 import { plainBody } from '@/domain/starting-specs.ts';
+import { integrityCodes, signalCodes } from '@/engine/figures.ts';
 import {
   draftResolver,
   formOf,
@@ -28,10 +30,14 @@ interface Props {
 }
 
 const draftOf = (spec: SpecDetail) => spec.versions.find(({ number }) => number === null) ?? null;
+const isOneOf = (subjects: readonly string[]) => (subject: RuleSubject) => subjects.includes(subject);
+const isOfSignal = isOneOf(signalMetrics);
 const subjectGroups: [string, (subject: RuleSubject) => boolean][] = [
-  ['Figures', (subject) => !isFact(subject) && !isFinding(subject)],
+  ['Figures', (subject) => !isFact(subject) && !isFinding(subject) && !isOfSignal(subject)],
+  ['The signal', isOfSignal],
   ['Facts of the file', isFact],
-  ['Integrity', isFinding],
+  ['Integrity', isOneOf(integrityCodes)],
+  ['Findings of the signal', isOneOf(signalCodes)],
 ];
 const nameOfSubject = (subject: RuleSubject) => subjectName(newRule(subject, []));
 

@@ -4,13 +4,15 @@ import { LoadLineEditor } from '@/components/look/LoadLineEditor.tsx';
 import { formatLimit, roundHalfAway } from '@/domain/figures-text.ts';
 import { factNames, findingNames, metricWords } from '@/domain/rule-words.ts';
 import type { RangeMetric } from '@/domain/spec.ts';
+import { silenceLevelsDbfs } from '@/engine/facts/thresholds.ts';
 import type { FindingCode } from '@/engine/figures.ts';
-import { numberOf, type DraftForm, type RuleForm } from './draft-form.ts';
+import { isSilence, numberOf, type DraftForm, type RuleForm } from './draft-form.ts';
 
 const finite = (text: string): number | null => {
   const value = numberOf(text);
   return value === null || Number.isNaN(value) ? null : value;
 };
+const withUnit = (label: string, unit: string) => (unit === '' ? label : `${label} (${unit})`);
 const tidy = (value: number) => roundHalfAway(value, 3);
 
 const factHints: Record<string, string> = {
@@ -20,6 +22,20 @@ const factHints: Record<string, string> = {
   container: 'With commas between: WAV, RF64, BW64, AIFF, FLAC, MP3, MP4, MOV, MXF',
   codec: 'With commas between: PCM, FLAC, MP3, AAC',
   audioChannels: 'How many, with commas between: 2, 6',
+  effectiveBitDepth: 'Bits down to the lowest in use, with commas between: 24, 16',
+  frameRate: 'With commas between: 25, 29.97 DF',
+  startTimecode: 'As the file tells it: 10:00:00:00',
+};
+
+/** How far a dragged limit moves at a time. */
+const steps: Partial<Record<RangeMetric, number>> = {
+  durationSeconds: 1,
+  dropOutCount: 1,
+  clippedRunCount: 1,
+  bandwidthHz: 100,
+  bitRateKbps: 8,
+  correlationLowest: 0.05,
+  dcOffsetPercent: 0.05,
 };
 
 /** What a rule is about, in the trade's words. */
@@ -92,9 +108,22 @@ export function RuleFields({ index, onRemove }: Props) {
           )}
           {rule.kind === 'limits' && (
             <>
-              {input('atLeast', `At least (${unit})`, 'Empty: no lower limit')}
-              {input('atMost', `At most (${unit})`, 'Empty: no upper limit')}
+              {input('atLeast', withUnit('At least', unit), 'Empty: no lower limit')}
+              {input('atMost', withUnit('At most', unit), 'Empty: no upper limit')}
             </>
+          )}
+          {rule.kind === 'limits' && isSilence(rule.metric) && (
+            <Field label="Silent under (dBFS)" hint="RMS of 10 ms, every audio channel">
+              {(ids) => (
+                <select className="field" {...ids} {...register(at('silenceLevelDbfs'))}>
+                  {silenceLevelsDbfs.map((level) => (
+                    <option key={level} value={level}>
+                      {formatLimit(level).replace(/\.0$/, '')}
+                    </option>
+                  ))}
+                </select>
+              )}
+            </Field>
           )}
           {rule.kind === 'oneOf' && (
             <div className="sm:col-span-3">{input('allowed', 'One of', factHints[rule.fact] ?? '')}</div>
@@ -102,7 +131,8 @@ export function RuleFields({ index, onRemove }: Props) {
           {rule.kind === 'finding' && (
             <p className="text-muted sm:col-span-3">A file with this finding breaches the rule.</p>
           )}
-          {isNumeric && input('measurementTolerance', `Measurement tolerance (${marginUnit})`, '0: off')}
+          {isNumeric &&
+            input('measurementTolerance', withUnit('Measurement tolerance', marginUnit), '0: off')}
           {rule.kind === 'limits' && rule.metric === 'rangeLu' && (
             <label className="flex items-center gap-2 sm:col-span-3">
               <input type="checkbox" {...register(at('judgeShortProgrammes'))} />
@@ -143,7 +173,7 @@ function Line({
         unit={unit}
         label={name}
         {...limits}
-        step={metric === 'durationSeconds' ? 1 : 0.1}
+        step={steps[metric] ?? 0.1}
         onChange={({ atLeast, atMost }) => {
           put('atLeast', atLeast);
           put('atMost', atMost);

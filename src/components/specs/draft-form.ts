@@ -5,6 +5,7 @@ import type { z } from 'zod';
 import { saveDraftSchema } from '@/domain/api/specs.ts';
 import { formatLimit } from '@/domain/figures-text.ts';
 import { rangeMetrics, type Rule, type SpecBody } from '@/domain/spec.ts';
+import { defaultSilence } from '@/engine/facts/thresholds.ts';
 import { findingCodes } from '@/engine/figures.ts';
 
 export interface RuleForm {
@@ -19,6 +20,8 @@ export interface RuleForm {
   atLeast: string;
   atMost: string;
   judgeShortProgrammes: boolean;
+  /** Of rules on silence; as text, for the list that offers it. */
+  silenceLevelDbfs: string;
   fact: string;
   /** Values with commas between. */
   allowed: string;
@@ -45,6 +48,9 @@ export const ruleSubjects = [
   'container',
   'codec',
   'audioChannels',
+  'effectiveBitDepth',
+  'frameRate',
+  'startTimecode',
   ...findingCodes,
 ] as const;
 export type RuleSubject = (typeof ruleSubjects)[number];
@@ -56,6 +62,9 @@ const facts = {
   container: 'WAV, BW64',
   codec: 'PCM',
   audioChannels: '2, 6',
+  effectiveBitDepth: '24',
+  frameRate: '25',
+  startTimecode: '10:00:00:00',
 } as const;
 /** Upper limits to begin with; common practice, no source. The writer is expected to change them. */
 const firstAtMost: Record<string, string> = {
@@ -66,8 +75,25 @@ const firstAtMost: Record<string, string> = {
   momentaryMaxLufs: '−15.0',
   peakToLoudnessLu: '20.0',
   durationSeconds: '3600',
+  downmixIntegratedLufs: '−23.0',
+  downmixTruePeakDbtp: '−1.0',
+  silenceHeadSeconds: '2.0',
+  silenceTailSeconds: '2.0',
+  silenceInsideSeconds: '2.0',
+  dropOutCount: '0',
+  clippedRunCount: '0',
+  dcOffsetPercent: '0.5',
+  balanceLu: '3.0',
+  outOfPhasePercent: '5.0',
+};
+const firstAtLeast: Record<string, string> = {
+  balanceLu: '−3.0',
+  correlationLowest: '−0.3',
+  bandwidthHz: '17000',
+  bitRateKbps: '192',
 };
 
+export const isSilence = (metric: string): boolean => metric.startsWith('silence');
 export const isFact = (subject: string): subject is keyof typeof facts => subject in facts;
 export const isFinding = (subject: string): boolean => (findingCodes as readonly string[]).includes(subject);
 
@@ -90,6 +116,7 @@ const blank = {
   atLeast: '',
   atMost: '',
   judgeShortProgrammes: false,
+  silenceLevelDbfs: String(defaultSilence.levelDbfs),
   fact: 'sampleRateHz',
   allowed: '',
   code: 'truncated',
@@ -107,7 +134,13 @@ export function newRule(subject: RuleSubject, taken: readonly string[]): RuleFor
     };
   if (isFact(subject)) return { ...frame, kind: 'oneOf', fact: subject, allowed: facts[subject] };
   if (isFinding(subject)) return { ...frame, kind: 'finding', code: subject };
-  return { ...frame, kind: 'limits', metric: subject, atMost: firstAtMost[subject] ?? '' };
+  return {
+    ...frame,
+    kind: 'limits',
+    metric: subject,
+    atLeast: firstAtLeast[subject] ?? '',
+    atMost: firstAtMost[subject] ?? '',
+  };
 }
 
 const written = (value: number | null) => (value === null ? '' : formatLimit(value));
@@ -136,6 +169,7 @@ function ruleForm(rule: Rule): RuleForm {
         atLeast: written(rule.atLeast),
         atMost: written(rule.atMost),
         judgeShortProgrammes: rule.judgeShortProgrammes,
+        silenceLevelDbfs: String(rule.silenceLevelDbfs ?? defaultSilence.levelDbfs),
       };
     case 'oneOf':
       return { ...frame, kind: rule.kind, fact: rule.fact, allowed: rule.allowed.join(', ') };
@@ -182,6 +216,7 @@ function candidateRule(rule: RuleForm): unknown {
         atLeast: numberOf(rule.atLeast),
         atMost: numberOf(rule.atMost),
         judgeShortProgrammes: rule.judgeShortProgrammes,
+        ...(isSilence(rule.metric) && { silenceLevelDbfs: numberOf(rule.silenceLevelDbfs) }),
       };
     case 'oneOf':
       return {

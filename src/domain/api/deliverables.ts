@@ -8,6 +8,7 @@ import {
 } from '../vocabulary.ts';
 import { excursionSchema, verdictBodySchema } from '../verdict.ts';
 import { measuringPlanSchema } from '../measuring-plan.ts';
+import { signalFactsSchema } from './signal-facts.ts';
 import { specBodySchema } from '../spec.ts';
 import { benchComparisonSchema, benchFiguresSchema } from '../bench-figures.ts';
 import { idSchema, itemResultSchema, listOf, momentSchema, pageQuerySchema, personSchema } from './common.ts';
@@ -73,6 +74,7 @@ export const figuresSchema = z.object({
   measuredSeconds: z.number(),
   windowStartSeconds: z.number().optional(),
   downmix: z.object({ integratedLufs: level, truePeakDbtp: level }).optional(),
+  signal: signalFactsSchema.optional(),
 });
 export const findingSchema = z.object({
   code: z.string(),
