@@ -32,13 +32,24 @@ export function overPresentations(all: readonly PresentationVerdict[]): VerdictB
   const rules = new Map<string, RuleVerdict>();
   for (const { name, verdict } of all)
     for (const rule of verdict.rules) {
-      const named = { ...rule, presentation: name };
+      const marginText = rule.outcome === 'pass' ? rule.marginText : `${rule.marginText} in ${name}`;
+      const named = { ...rule, presentation: name, marginText };
       const before = rules.get(rule.ruleId);
       if (!before || isWorse(named, before)) rules.set(rule.ruleId, named);
     }
   return {
     ...worst.verdict,
     rules: [...rules.values()],
-    nearestText: `${worst.name}: ${worst.verdict.nearestText}`,
+    nearestText: `${worst.verdict.nearestText} in ${worst.name}`,
   };
+}
+
+/** The figure to show beside a rule: that of the presentation which the rule is told of, else the first one's. */
+export function figureBeside(
+  verdict: VerdictBody | null,
+  metric: string,
+  first: number | null,
+): number | null {
+  const rule = verdict?.rules.find((one) => one.metric === metric);
+  return rule?.presentation === undefined ? first : rule.measured;
 }

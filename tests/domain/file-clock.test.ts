@@ -47,9 +47,16 @@ describe('what a person types', () => {
     ['1:30', 90],
     ['00:01:30.25', 90.25],
     ['01:00:00', 3600],
+    ['01:02:03.5', 3723.5],
+    ['45.25', 45.25],
+    ['00:00:00,040', 0.04],
   ])('reads %s without a rate as %d s', (typed, seconds) => {
     expect(secondsOf(plainClock, typed)).toBeCloseTo(seconds, 9);
   });
+
+  it.each(['', '1:75', '99:00', 'soon', '-3', '1:2:3:4'])('refuses %j', (typed) =>
+    expect(secondsOf(plainClock, typed)).toMatch(/hours, minutes and seconds/),
+  );
 
   it('says what it cannot read, and what lies before the file', () => {
     const clock = fileClock({ ...wave, frameRate: '25', startTimecode: '10:00:00:00' }, null);

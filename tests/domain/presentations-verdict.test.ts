@@ -1,6 +1,6 @@
 import { describe, expect, it } from 'vitest';
 import { judge } from '../../src/domain/judge.ts';
-import { overPresentations, worstOf } from '../../src/domain/presentations-verdict.ts';
+import { figureBeside, overPresentations, worstOf } from '../../src/domain/presentations-verdict.ts';
 import { figures, r128Body, stereoFormat } from '../factories/world.ts';
 
 const verdictOf = (given: Parameters<typeof figures>[0]) =>
@@ -14,7 +14,7 @@ describe('a verdict over several presentations', () => {
   it('is as good as the worst, and names it', () => {
     const verdict = overPresentations([right, loud]);
     expect(verdict.outcome).toBe('fail');
-    expect(verdict.nearestText).toBe('M&E: integrated 2.5 LU over');
+    expect(verdict.nearestText).toBe('integrated 2.5 LU over in M&E');
   });
 
   it('holds every rule as it ends where it ends worst', () => {
@@ -24,12 +24,23 @@ describe('a verdict over several presentations', () => {
       ['true-peak', 'fail', 'Described'],
       ['range', 'pass', 'Full mix'],
     ]);
+    expect(rules.map(({ marginText }) => marginText)).toEqual([
+      '2.5 LU over in M&E',
+      '1.4 dB over in Described',
+      '9.0 LU inside',
+    ]);
   });
 
   it('takes the smaller margin where a rule ends alike in two', () => {
     const louder = { name: 'Louder', verdict: verdictOf({ integratedLufs: -18 }) };
     const [integrated] = overPresentations([loud, louder]).rules;
     expect([integrated.presentation, integrated.judged]).toEqual(['Louder', -18]);
+  });
+
+  it('shows the figure that its rule is told of', () => {
+    expect(figureBeside(overPresentations([right, loud]), 'integratedLufs', -23)).toBe(-20);
+    expect(figureBeside(overPresentations([right]), 'integratedLufs', -23)).toBe(-23);
+    expect(figureBeside(null, 'integratedLufs', -23)).toBe(-23);
   });
 
   it('is the verdict itself where there is one presentation', () => {

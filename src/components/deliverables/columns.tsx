@@ -4,6 +4,7 @@ import { LoadLine } from '@/components/look/LoadLine.tsx';
 import { outcomeTone, VerdictMark } from '@/components/look/VerdictMark.tsx';
 import type { DeliverableRow } from '@/domain/api/deliverables.ts';
 import { formatDuration } from '@/domain/figures-text.ts';
+import { figureBeside } from '@/domain/presentations-verdict.ts';
 import type { VerdictBody } from '@/domain/verdict.ts';
 import { submissionStateNames } from '@/domain/vocabulary.ts';
 
@@ -102,7 +103,12 @@ export const deliverableColumns: ColumnDef<DeliverableRow, unknown>[] = [
     header: 'Integrated',
     meta: { figure: true, sort: 'integrated', from: 'md' },
     cell: ({ row: { original: row } }) =>
-      row.figures && <Figure value={row.figures.loudness.integratedLufs} unit="LUFS" />,
+      row.figures && (
+        <Figure
+          value={figureBeside(worst(row), 'integratedLufs', row.figures.loudness.integratedLufs)}
+          unit="LUFS"
+        />
+      ),
   },
   {
     id: 'integrated-line',
@@ -115,7 +121,9 @@ export const deliverableColumns: ColumnDef<DeliverableRow, unknown>[] = [
     header: 'True peak',
     meta: { figure: true, sort: 'truePeak', from: 'md' },
     cell: ({ row: { original: row } }) =>
-      row.figures && <Figure value={row.figures.truePeak.maxDbtp} unit="dBTP" />,
+      row.figures && (
+        <Figure value={figureBeside(worst(row), 'truePeakDbtp', row.figures.truePeak.maxDbtp)} unit="dBTP" />
+      ),
   },
   {
     id: 'peak-line',
@@ -128,7 +136,9 @@ export const deliverableColumns: ColumnDef<DeliverableRow, unknown>[] = [
     header: 'Range',
     meta: { figure: true, sort: 'range', from: 'xl' },
     cell: ({ row: { original: row } }) =>
-      row.figures && <Figure value={row.figures.loudness.rangeLu} unit="LU" />,
+      row.figures && (
+        <Figure value={figureBeside(worst(row), 'rangeLu', row.figures.loudness.rangeLu)} unit="LU" />
+      ),
   },
   {
     id: 'nearest',

@@ -56,9 +56,9 @@ export function PatchGrid({ trackNames, columns, onChange }: Props) {
                 {name && <span className="ml-2 text-muted">{name}</span>}
               </th>
               {columns.map((column, at) => (
-                <td key={at}>
+                <td key={at} className={column.speakers[channel] ? 'bg-pick' : undefined}>
                   <select
-                    className={`field ${column.speakers[channel] ? '' : 'text-muted'}`}
+                    className={`field border-transparent! hover:border-muted! ${column.speakers[channel] ? 'font-semibold' : 'text-muted!'}`}
                     aria-label={`Audio channel ${channel + 1} in ${column.name || `presentation ${at + 1}`}`}
                     value={column.speakers[channel] ?? ''}
                     onChange={({ target: { value } }) =>

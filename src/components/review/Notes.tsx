@@ -3,22 +3,23 @@ import { api } from '@/components/live/api.ts';
 import { useLiveEvents } from '@/components/live/use-live-events.ts';
 import { Notice } from '@/components/look/Notice.tsx';
 import { submissionReportSchema, type SubmissionReport } from '@/domain/api/submissions.ts';
-import { formatTimecode } from '@/domain/figures-text.ts';
+import { readTimeInFile, timeInFile, type FileClock } from '@/domain/file-clock.ts';
 import { momentText } from './review-list.ts';
-import { secondsOfTimecode } from './timecode.ts';
 
 interface Props {
   id: string;
   initial: SubmissionReport['notes'];
   mayWrite: boolean;
   timeZone: string;
+  /** By which times of the file are written. */
+  clock: FileClock;
 }
 
 /** Against which a note's moment is always told with its day. */
 const longAgo = new Date(0);
 
 /** Notes that both sides read, anchored to a time of the programme where one is given. */
-export default function Notes({ id, initial, mayWrite, timeZone }: Props) {
+export default function Notes({ id, initial, mayWrite, timeZone, clock }: Props) {
   const [notes, setNotes] = useState(initial);
   const [text, setText] = useState('');
   const [at, setAt] = useState('');
@@ -33,13 +34,12 @@ export default function Notes({ id, initial, mayWrite, timeZone }: Props) {
   });
   const send = async (event: FormEvent) => {
     event.preventDefault();
-    const atSeconds = at.trim() === '' ? null : secondsOfTimecode(at);
-    if (Number.isNaN(atSeconds)) {
-      setTrouble(
-        `"${at}" is no time of the programme. Write it as hh:mm:ss.mmm, or leave it empty. Your note is kept.`,
-      );
+    const time = at.trim() === '' ? null : readTimeInFile(clock, at);
+    if (time && 'fault' in time) {
+      setTrouble(`${time.fault} Or leave the time empty. Your note is kept.`);
       return;
     }
+    const atSeconds = time?.seconds ?? null;
     setBusy(true);
     setTrouble(null);
     try {
@@ -67,7 +67,7 @@ export default function Notes({ id, initial, mayWrite, timeZone }: Props) {
             </p>
             <p className="break-words whitespace-pre-line">
               {note.atSeconds !== null && (
-                <span className="num mr-2 text-teal">{formatTimecode(note.atSeconds)}</span>
+                <span className="num mr-2 text-teal">{timeInFile(clock, note.atSeconds)}</span>
               )}
               {note.text}
             </p>
@@ -88,12 +88,14 @@ export default function Notes({ id, initial, mayWrite, timeZone }: Props) {
             />
           </label>
           <label className="grid gap-1">
-            <span className="text-[13px] font-medium">At, in the programme (hh:mm:ss.mmm), if anywhere</span>
+            <span className="text-[13px] font-medium">
+              At, in the file ({clock.rate ? 'timecode' : 'hh:mm:ss.mmm'}), if anywhere
+            </span>
             <input
               className="field num max-w-40"
               value={at}
               onChange={(event) => setAt(event.target.value)}
-              placeholder="00:00:00.000"
+              placeholder={timeInFile(clock, 0)}
             />
           </label>
           {trouble && <Notice tone="refused">{trouble}</Notice>}

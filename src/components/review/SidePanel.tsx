@@ -11,6 +11,7 @@ import {
   type SubmissionReport,
   type SubmissionRow,
 } from '@/domain/api/submissions.ts';
+import { fileClock } from '@/domain/file-clock.ts';
 import { formatDuration } from '@/domain/figures-text.ts';
 import { changesBetween } from './changes.ts';
 import { rowName, whyNoDecision, worstRule } from './review-list.ts';
@@ -43,6 +44,8 @@ export function SidePanel({ row, decides, busy, onApprove, onReject, onWaive }: 
     return () => clearInterval(timer);
   }, [id, decides]);
   const rule = worstRule(row);
+  // The passage is of the presentation that the worst rule is told of.
+  const told = report.data?.presentations.find(({ name }) => name === rule?.presentation);
   const no = whyNoDecision(row);
   const fails = row.verdict.outcome === 'fail';
   return (
@@ -99,10 +102,11 @@ export function SidePanel({ row, decides, busy, onApprove, onReject, onWaive }: 
         <PassagePanel
           key={id}
           compact
-          passageUrl={`/api/v1/submissions/${id}/passage`}
+          passageUrl={`/api/v1/submissions/${id}/passage?presentation=${told?.position ?? 1}`}
+          clock={fileClock(row.format, report.data.frameRate)}
           audioUrl={`/api/v1/submissions/${id}/audio`}
           specBody={report.data.specBody}
-          integratedLufs={row.figures.loudness.integratedLufs}
+          integratedLufs={(told?.measurement ?? row).figures.loudness.integratedLufs}
           search=""
         />
       ) : (

@@ -3,6 +3,7 @@ import { RuleCell } from '@/components/deliverables/columns.tsx';
 import { Figure } from '@/components/look/Figure.tsx';
 import { outcomeTone, VerdictMark } from '@/components/look/VerdictMark.tsx';
 import type { SubmissionRow } from '@/domain/api/submissions.ts';
+import { figureBeside } from '@/domain/presentations-verdict.ts';
 import { submissionStateNames } from '@/domain/vocabulary.ts';
 import { momentText, rowName } from './review-list.ts';
 
@@ -74,7 +75,9 @@ export function submissionColumns(
       id: 'integrated',
       header: 'Integrated',
       meta: { figure: true, sort: 'integrated', from: 'md' },
-      cell: ({ row }) => <Figure value={row.original.figures.loudness.integratedLufs} />,
+      cell: ({ row: { original: row } }) => (
+        <Figure value={figureBeside(row.verdict, 'integratedLufs', row.figures.loudness.integratedLufs)} />
+      ),
     },
     {
       id: 'integrated-line',
@@ -86,7 +89,9 @@ export function submissionColumns(
       id: 'peak',
       header: 'True peak',
       meta: { figure: true, sort: 'truePeak', from: 'md' },
-      cell: ({ row }) => <Figure value={row.original.figures.truePeak.maxDbtp} />,
+      cell: ({ row: { original: row } }) => (
+        <Figure value={figureBeside(row.verdict, 'truePeakDbtp', row.figures.truePeak.maxDbtp)} />
+      ),
     },
     {
       id: 'peak-line',

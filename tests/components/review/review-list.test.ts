@@ -11,7 +11,6 @@ import {
   showOf,
   whyNoDecision,
 } from '../../../src/components/review/review-list.ts';
-import { secondsOfTimecode } from '../../../src/components/review/timecode.ts';
 import type { SubmissionRow } from '../../../src/domain/api/submissions.ts';
 import type { OverallOutcome } from '../../../src/domain/vocabulary.ts';
 import { figures } from '../../factories/world.ts';
@@ -113,16 +112,4 @@ describe('the change against the delivery before', () => {
     expect(of('truePeakDbtp')?.changeText).toBe('unchanged');
     expect(of('rangeLu')?.changeText).toBe('nothing to compare');
   });
-});
-
-describe('a note’s timecode', () => {
-  it.each([
-    ['01:02:03.5', 3723.5],
-    ['2:03', 123],
-    ['45.25', 45.25],
-    ['00:00:00,040', 0.04],
-  ])('reads %s as %d s', (text, seconds) => expect(secondsOfTimecode(text)).toBeCloseTo(seconds, 6));
-  it.each(['', '1:75', '99:00', 'soon', '-3', '1:2:3:4'])('refuses %j', (text) =>
-    expect(secondsOfTimecode(text)).toBeNaN(),
-  );
 });

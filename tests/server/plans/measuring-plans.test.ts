@@ -98,7 +98,7 @@ describe('a measuring plan', () => {
     expect(effects.verdicts).toMatchObject([{ verdict: { outcome: 'fail' } }]);
     expect(after.channels[0].verdict).toMatchObject({
       outcome: 'fail',
-      nearestText: expect.stringMatching(/^M&E: integrated \d\.\d LU over$/),
+      nearestText: expect.stringMatching(/^integrated \d\.\d LU over in M&E$/),
     });
     // The list agrees: its figures are the first presentation's, its verdict is over all.
     const list = valueOf(
@@ -249,7 +249,7 @@ describe('a submission of several presentations', () => {
     valueOf(await put(id, twoPairs));
     await measure(id);
     const row = await submit(id);
-    expect(row.verdict).toMatchObject({ outcome: 'fail', nearestText: expect.stringMatching(/^M&E: /) });
+    expect(row.verdict).toMatchObject({ outcome: 'fail', nearestText: expect.stringMatching(/ in M&E$/) });
     expect(refusalOf(await put(id, wholeFile)).message).toMatch(/Withdraw it first/);
     const read = submissionReportSchema.parse(valueOf(await getSubmissionReport(chain.operator, row.id)));
     expect(read.presentations.map(({ name, verdict }) => [name, verdict.outcome])).toEqual([
