@@ -18,7 +18,7 @@ import type { Core, CoreOptions, CoreSink, CoreStep, CoreTotals } from './kernel
 import { KernelCore } from './kernel/kernel-core.ts';
 import { ScalarCore } from './kernel/scalar-core.ts';
 import { weightOf, type Speaker } from './layouts.ts';
-import type { Run, StepObserver } from './steps.ts';
+import type { Planar, Run, StepObserver } from './steps.ts';
 
 export interface MeterOptions {
   sampleRateHz: number;
@@ -74,7 +74,6 @@ export class Meter {
   readonly #peaks: GrowingFloats<Float32Array>;
   readonly #channelEnergies: GrowingFloats<Float32Array>;
   readonly #hundredth: Float64Array;
-  readonly #planar: Float32Array[] = [];
   readonly #step;
   /** Runs at the largest value of each audio channel so far. */
   readonly #flatTops = new Map<number, { value: number; runs: Run[] }>();
@@ -168,11 +167,12 @@ export class Meter {
     for (const observer of this.#options.observers ?? []) observer.run(run);
   }
 
-  #takeSamples(planar: readonly Float32Array[], count: number, first: number): void {
-    const { observers = [] } = this.#options;
-    if (observers.length === 0) return;
-    this.#lanes.forEach((lane, i) => (this.#planar[i] = planar[lane]));
-    for (const observer of observers) observer.samples(this.#planar, count, first);
+  #takeSamples(planar: Planar, count: number, first: number): void {
+    const mine = () => {
+      const lanes = planar();
+      return this.#lanes.map((lane) => lanes[lane]);
+    };
+    for (const observer of this.#options.observers ?? []) observer.samples(mine, count, first);
   }
 
   /** Figures and series of all that was processed; ends the measurement. */

@@ -21,9 +21,12 @@ export interface Run {
   length: number;
 }
 
+/** Asked only by whoever wants the samples: most go by unseen. */
+export type Planar = () => readonly Float32Array[];
+
 export interface StepObserver {
   step(step: Step): void;
   run(run: Run): void;
-  /** Samples in order, planar, by audio channel of the presentation; `first`: place of the first in the programme. The arrays are reused. */
-  samples(planar: readonly Float32Array[], count: number, first: number): void;
+  /** Samples in order: `count` from the place `first` of the programme. `planar` gives them by audio channel, in arrays that are reused. */
+  samples(planar: Planar, count: number, first: number): void;
 }

@@ -1,7 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import type { Encoding } from '../../src/engine/containers/samples.ts';
 import type { Speaker } from '../../src/engine/layouts.ts';
-import type { Run, Step, StepObserver } from '../../src/engine/steps.ts';
+import type { Planar, Run, Step, StepObserver } from '../../src/engine/steps.ts';
 import { measurePlanar } from '../signals/meter-planar.ts';
 
 /** Everything that an observer sees, copied; runs sorted, since the twins may tell those of one step in another order. */
@@ -15,8 +15,9 @@ class Witness implements StepObserver {
   run(run: Run): void {
     this.runs.push(run);
   }
-  samples(planar: readonly Float32Array[], count: number, first: number): void {
-    for (let i = 0; i < count; i++) for (const lane of planar) this.heard.push(first + i, lane[i]);
+  samples(planar: Planar, count: number, first: number): void {
+    const lanes = planar();
+    for (let i = 0; i < count; i++) for (const lane of lanes) this.heard.push(first + i, lane[i]);
   }
   get all() {
     const order = (run: Run) => `${run.kind} ${run.audioChannel} ${String(run.start).padStart(9, '0')}`;

@@ -3,6 +3,7 @@
  * a quotient of two sums, and what that leaves over tells how pure the tone is.
  */
 import type { LineUpTone } from '../figures.ts';
+import type { Planar } from '../steps.ts';
 import { lineUpTone, powerOfDb } from './thresholds.ts';
 
 /** Stretches that are looked at: a fifth of a tenth of a second each, which costs a fifth. */
@@ -34,13 +35,14 @@ export class ToneFinder {
     this.#held = new Float64Array(Math.max(16, Math.round(lookedAtSeconds * sampleRateHz)));
   }
 
-  /** Samples of one stretch after another: the sum of the audio channels' magnitudes is of no use, so the loudest is taken. */
-  samples(planar: readonly Float32Array[], count: number, first: number): void {
+  /** Looks at the begin of one stretch after another, in the audio channel that is the loudest there. */
+  samples(all: Planar, count: number, first: number): void {
     if (this.#done) return;
     for (;;) {
       const start = this.#index * this.#stretch;
       const from = start + this.#filled - first;
       if (from >= count) return;
+      const planar = all();
       const taken = Math.min(count - from, this.#held.length - this.#filled);
       const samples = planar[this.#channelOf(planar, from, taken)];
       for (let i = 0; i < taken; i++) this.#held[this.#filled + i] = samples[from + i];

@@ -1,7 +1,7 @@
 /** The facts of a signal (MEASUREMENT, "What else a delivery spec asks"), gathered while it is measured. */
 import type { SignalFacts, Stretch, SuspectOrder } from '../figures.ts';
 import type { Speaker } from '../layouts.ts';
-import type { Run, Step, StepObserver } from '../steps.ts';
+import type { Planar, Run, Step, StepObserver } from '../steps.ts';
 import { Runs } from './clipping.ts';
 import { DropOuts } from './drop-outs.ts';
 import { ToneFinder } from './line-up-tone.ts';
@@ -52,7 +52,7 @@ export class SignalObserver implements StepObserver {
     else this.#flatTops.run(run);
   }
 
-  samples(planar: readonly Float32Array[], count: number, first: number): void {
+  samples(planar: Planar, count: number, first: number): void {
     this.#spectrum.samples(planar, count, first);
     this.#tone.samples(planar, count, first);
   }

@@ -1,13 +1,14 @@
 /**
- * The long-term mean spectrum, of Hann windows of 1024 samples: ten a second in the first minute, one a second from then on,
- * which is enough for a mean and costs next to nothing. Two audio channels share one transform.
+ * The long-term mean spectrum, of Hann windows of 1024 samples: ten a second in the first 20 s, one in two seconds from then
+ * on, which is enough for a mean and costs next to nothing. Two audio channels share one transform.
  */
 import type { Speaker } from '../layouts.ts';
+import type { Planar } from '../steps.ts';
 import { Fourier } from './fourier.ts';
 import { bandwidth, powerOfDb, suspectLfe } from './thresholds.ts';
 
 const length = 1024;
-const denseSeconds = 60;
+const denseSeconds = 20;
 /** Bins that a level is the mean of. */
 const smoothed = 5;
 
@@ -32,12 +33,13 @@ export class Spectrum {
   }
 
   /** Samples of every audio channel, `first` being the place of the first. */
-  samples(planar: readonly Float32Array[], count: number, first: number): void {
+  samples(planar: Planar, count: number, first: number): void {
     while (this.#next + length > first && this.#next + this.#filled < first + count) {
       const from = this.#next + this.#filled - first;
       const taken = Math.min(count - from, length - this.#filled);
+      const lanes = planar();
       this.#held.forEach((held, c) => {
-        const samples = planar[c];
+        const samples = lanes[c];
         for (let i = 0; i < taken; i++)
           held[this.#filled + i] = samples[from + i] * this.#window[this.#filled + i];
       });
@@ -45,7 +47,7 @@ export class Spectrum {
       if (this.#filled < length) return;
       this.#take();
       this.#filled = 0;
-      const hop = this.#next < denseSeconds * this.#rate ? this.#rate / 10 : this.#rate;
+      const hop = this.#next < denseSeconds * this.#rate ? this.#rate / 10 : 2 * this.#rate;
       this.#next += Math.max(length, Math.round(hop));
     }
   }

@@ -4,7 +4,7 @@
  */
 import type { Encoding } from '../containers/samples.ts';
 import type { Interpolator } from '../interpolator.ts';
-import type { Run, Step } from '../steps.ts';
+import type { Planar, Run, Step } from '../steps.ts';
 
 export interface CoreOptions {
   sampleRateHz: number;
@@ -30,7 +30,7 @@ export interface CoreStep extends Step {
 export interface CoreSink {
   step(step: CoreStep): void;
   run(run: Run, value: number): void;
-  samples(planar: readonly Float32Array[], count: number, first: number): void;
+  samples(planar: Planar, count: number, first: number): void;
 }
 
 export interface LaneTotals {

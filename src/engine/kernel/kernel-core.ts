@@ -101,7 +101,6 @@ export class KernelCore implements Core {
   readonly #doubles: Float64Array;
   readonly #records: number;
   readonly #events: number;
-  readonly #planar: Float32Array[] = [];
   readonly #step;
   #samples = 0;
   #steps = 0;
@@ -206,13 +205,12 @@ export class KernelCore implements Core {
   }
 
   #tellSamples(count: number): void {
-    for (let lane = 0; lane < this.#lanes; lane++)
-      this.#planar[lane] = new Float32Array(
-        this.#doubles.buffer,
-        this.#kernel.newestPointer(lane, count),
-        count,
+    const planar = () =>
+      Array.from(
+        { length: this.#lanes },
+        (_, lane) => new Float32Array(this.#doubles.buffer, this.#kernel.newestPointer(lane, count), count),
       );
-    this.#sink.samples(this.#planar, count, this.#samples);
+    this.#sink.samples(planar, count, this.#samples);
   }
 
   finish(): CoreTotals {

@@ -112,7 +112,7 @@ export class ScalarCore implements Core {
         for (let lane = 0; lane < values.length; lane++) this.#planar[lane][i] = values[lane];
         this.#take(values);
       }
-      this.#sink.samples(this.#planar, count, first);
+      this.#sink.samples(() => this.#planar, count, first);
     }
   }
 

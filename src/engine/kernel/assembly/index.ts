@@ -12,7 +12,7 @@ import { beginStep, peaksOf, quiet, stepPeakOver, survey } from './true-peak';
 import { weigh } from './weighing';
 
 export { allocate, inputPointer, newestPointer, offsetsPointer } from './rows';
-export { configureSamples, usedBits, wildCount, wildFirst } from './convert';
+export { configureSamples, convert, usedBits, wildCount, wildFirst } from './convert';
 export { factorsPointer } from './mix';
 export { configureRecords, recordDoubles, recordsPointer, whole } from './records';
 export { configureRuns, eventCount, eventsPointer, lanePeak } from './runs';
