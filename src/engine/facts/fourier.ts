@@ -17,24 +17,34 @@ export class Fourier {
 
   transform(re: Float64Array, im: Float64Array): void {
     const n = this.length;
+    const cos = this.#cos;
+    const sin = this.#sin;
+    const swaps = this.#swaps;
     for (let i = 0; i < n; i++) {
-      const j = this.#swaps[i];
+      const j = swaps[i];
       if (j <= i) continue;
-      [re[i], re[j]] = [re[j], re[i]];
-      [im[i], im[j]] = [im[j], im[i]];
+      const r = re[i];
+      const m = im[i];
+      re[i] = re[j];
+      im[i] = im[j];
+      re[j] = r;
+      im[j] = m;
     }
     for (let half = 1; half < n; half *= 2) {
       const stride = n / (2 * half);
-      for (let start = 0; start < n; start += 2 * half)
-        for (let k = 0, w = 0; k < half; k++, w += stride) {
-          const [a, b] = [start + k, start + k + half];
-          const tr = re[b] * this.#cos[w] - im[b] * this.#sin[w];
-          const ti = re[b] * this.#sin[w] + im[b] * this.#cos[w];
+      for (let k = 0, w = 0; k < half; k++, w += stride) {
+        const c = cos[w];
+        const s = sin[w];
+        for (let a = k; a < n; a += 2 * half) {
+          const b = a + half;
+          const tr = re[b] * c - im[b] * s;
+          const ti = re[b] * s + im[b] * c;
           re[b] = re[a] - tr;
           im[b] = im[a] - ti;
           re[a] += tr;
           im[a] += ti;
         }
+      }
     }
   }
 }

@@ -1,5 +1,5 @@
 /**
- * The long-term mean spectrum, of Hann windows of 1024 samples: ten a second in the first 20 s, one in two seconds from then
+ * The long-term mean spectrum, of Hann windows of 1024 samples: ten a second in the first 20 s, one in three seconds from then
  * on, which is enough for a mean and costs next to nothing. Two audio channels share one transform.
  */
 import type { Speaker } from '../layouts.ts';
@@ -47,7 +47,7 @@ export class Spectrum {
       if (this.#filled < length) return;
       this.#take();
       this.#filled = 0;
-      const hop = this.#next < denseSeconds * this.#rate ? this.#rate / 10 : 2 * this.#rate;
+      const hop = this.#next < denseSeconds * this.#rate ? this.#rate / 10 : 3 * this.#rate;
       this.#next += Math.max(length, Math.round(hop));
     }
   }
