@@ -43,6 +43,7 @@ const sentences: Record<string, (detail: Detail) => string> = {
   'deliverable.discarded': (d) => `discarded ${delivery(d)}`,
   'deliverable.details_changed': (d) => `changed the details of ${delivery(d)}`,
   'deliverable.plan_changed': (d) => `had ${delivery(d)} measured ${text(d, 'plan') ?? 'another way'}`,
+  'deliverable.set_made': (d) => `took several files as one: ${delivery(d)}`,
   'upload.aborted': (d) => `gave up the upload of ${delivery(d)}`,
   'member.invited': (d) => `invited ${text(d, 'email') ?? 'somebody'} as ${list(d.roles)}`,
   'member.invitation_taken_back': (d) => `took back the invitation of ${text(d, 'email') ?? 'somebody'}`,

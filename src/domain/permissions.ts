@@ -97,6 +97,7 @@ export const routes: Record<string, Partial<Record<Method, Need>>> = {
   '/api/v1/deliverables/[id]/plan': { PUT: 'deliverable:upload' },
   '/api/v1/deliverables/[id]/passage': { GET: 'deliverable:read' },
   '/api/v1/deliverables/[id]/audio': { GET: 'deliverable:read' },
+  '/api/v1/deliverable-sets': { POST: 'deliverable:upload' },
   '/api/v1/programmes': { GET: 'deliverable:read' },
   '/api/v1/uploads': { GET: 'deliverable:upload', POST: 'deliverable:upload' },
   '/api/v1/uploads/[id]': { DELETE: 'deliverable:upload' },

@@ -12,6 +12,13 @@ export const bodies: Record<string, Body> = {
   'PUT /api/v1/deliverables/[id]/plan': () => ({
     plan: { stream: 0, window: { startSeconds: 10, endSeconds: null }, presentations: null },
   }),
+  'POST /api/v1/deliverable-sets': (h) => ({
+    name: 'Reel 1',
+    parts: [
+      { deliverableId: h.ids.deliverable, speaker: 'L' },
+      { deliverableId: h.ids.spareDeliverable, speaker: 'R' },
+    ],
+  }),
   'POST /api/v1/uploads': (_, n) => ({
     files: [{ fileName: `mix_${n}.wav`, byteSize: 50_000_000, lastModifiedMs: n }],
   }),

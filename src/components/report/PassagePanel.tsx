@@ -20,7 +20,8 @@ import { Excursions } from './Excursions.tsx';
 
 interface Props {
   passageUrl: string;
-  audioUrl: string;
+  /** `null` where there is nothing to play: a set of mono files. */
+  audioUrl: string | null;
   specBody: SpecBody | null;
   integratedLufs: number | null;
   /** By which times of the file are written. */
@@ -109,7 +110,7 @@ function Panel({
             }
             current={current}
             onCurrent={setCurrent}
-            onPlayFrom={playFrom}
+            onPlayFrom={audioUrl === null ? undefined : playFrom}
             playing={playing}
             height={compact ? 240 : 340}
             axis={{
@@ -122,32 +123,38 @@ function Panel({
             {passage.error ? <Notice tone="refused">{passage.error.message}</Notice> : 'Reading the curve…'}
           </div>
         )}
-        {/* The original as delivered: there is no text of it to show. */}
-        {/* eslint-disable-next-line jsx-a11y/media-has-caption */}
-        <audio
-          ref={audio}
-          controls
-          preload="none"
-          src={audioUrl}
-          aria-label="The original"
-          className="mt-2 h-9 w-full"
-          onTimeUpdate={(event) => setPlaying(event.currentTarget.currentTime - begins)}
-          onEnded={() => setPlaying(null)}
-          onError={() => setTrouble(true)}
-        />
-        {trouble && (
-          <Notice tone="refused">
-            This browser cannot play the file, or storage did not answer. The figures stand.
-          </Notice>
+        {audioUrl === null ? (
+          <p className="my-2 text-[12.5px] text-muted">A set of mono files cannot be played as one here.</p>
+        ) : (
+          <>
+            {/* The original as delivered: there is no text of it to show. */}
+            {/* eslint-disable-next-line jsx-a11y/media-has-caption */}
+            <audio
+              ref={audio}
+              controls
+              preload="none"
+              src={audioUrl}
+              aria-label="The original"
+              className="mt-2 h-9 w-full"
+              onTimeUpdate={(event) => setPlaying(event.currentTarget.currentTime - begins)}
+              onEnded={() => setPlaying(null)}
+              onError={() => setTrouble(true)}
+            />
+            {trouble && (
+              <Notice tone="refused">
+                This browser cannot play the file, or storage did not answer. The figures stand.
+              </Notice>
+            )}
+            <p className="my-2 text-[12.5px] text-muted">
+              Start with your monitors low: sustained loud listening harms hearing; follow your local
+              workplace-noise rules.{' '}
+              {down >= 0.05
+                ? `Playback begins ${formatLevel(down)} dB below the file's level`
+                : "Playback begins at the file's own level"}{' '}
+              and is never louder than the file.
+            </p>
+          </>
         )}
-        <p className="my-2 text-[12.5px] text-muted">
-          Start with your monitors low: sustained loud listening harms hearing; follow your local
-          workplace-noise rules.{' '}
-          {down >= 0.05
-            ? `Playback begins ${formatLevel(down)} dB below the file's level`
-            : "Playback begins at the file's own level"}{' '}
-          and is never louder than the file.
-        </p>
       </section>
       {passage.data && specBody && (
         <Excursions
@@ -155,10 +162,15 @@ function Panel({
           current={current}
           compact={compact}
           timeOf={timeOf}
-          onPlay={(excursion) => (
-            setCurrent(excursion.number),
-            playFrom(Math.max(0, excursion.startSeconds - 1))
-          )}
+          onShow={(excursion) => setCurrent(excursion.number)}
+          onPlay={
+            audioUrl === null
+              ? undefined
+              : (excursion) => (
+                  setCurrent(excursion.number),
+                  playFrom(Math.max(0, excursion.startSeconds - 1))
+                )
+          }
         />
       )}
     </div>

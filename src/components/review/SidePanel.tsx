@@ -104,7 +104,7 @@ export function SidePanel({ row, decides, busy, onApprove, onReject, onWaive }: 
           compact
           passageUrl={`/api/v1/submissions/${id}/passage?presentation=${told?.position ?? 1}`}
           clock={fileClock(row.format, report.data.frameRate)}
-          audioUrl={`/api/v1/submissions/${id}/audio`}
+          audioUrl={report.data.isSet ? null : `/api/v1/submissions/${id}/audio`}
           specBody={report.data.specBody}
           integratedLufs={(told?.measurement ?? row).figures.loudness.integratedLufs}
           search=""

@@ -9,6 +9,7 @@ import { deliverableListSchema, uploadListSchema, type Upload } from '@/domain/a
 import { guessFromFileName } from '@/domain/file-name-guess.ts';
 import { ArrivingTable } from './ArrivingTable.tsx';
 import { ProgressBar } from './ProgressBar.tsx';
+import { SetOffers } from './SetOffers.tsx';
 import { UnfinishedUploads } from './UnfinishedUploads.tsx';
 import { progressText } from './upload-item.ts';
 import { useUploads } from './use-uploads.ts';
@@ -158,6 +159,14 @@ function Screen({ channels, programmes, unfinished }: Props) {
             .send('DELETE', `/api/v1/uploads/${id}`)
             .catch((error: Error) => setTrouble(error.message));
           await open.refetch();
+        }}
+      />
+      <SetOffers
+        items={items}
+        onTaken={(keys) => {
+          keys.forEach((key) => queue.forget(key));
+          setPicked(new Set());
+          refresh();
         }}
       />
       {items.length > 0 && (

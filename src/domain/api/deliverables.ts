@@ -1,4 +1,5 @@
 import { z } from 'zod';
+import { speakers } from '../../engine/layouts.ts';
 import { frameRateNames } from '../../engine/timecode.ts';
 import {
   contentKindSchema,
@@ -173,6 +174,8 @@ export const deliverableReportSchema = deliverableRowSchema.extend({
   /** Of the first presentation; `null` while it is not measured by the plan that holds now. */
   measurement: measurementSchema.nullable(),
   presentations: z.array(measuredPresentationSchema),
+  /** The files of a set, in order; empty for what is one file. */
+  parts: z.array(z.object({ speaker: z.string(), fileName: z.string(), byteSize: z.number() })),
   plan: measuringPlanSchema,
   /** Frames a second by which its times are counted, where the file tells none. */
   frameRate: frameRateSchema.nullable(),
@@ -200,6 +203,21 @@ export const deliverableReportSchema = deliverableRowSchema.extend({
   replaces: z.object({ id: idSchema, fileName: z.string() }).nullable(),
 });
 export type DeliverableReport = z.infer<typeof deliverableReportSchema>;
+
+/** Mono files, in the order of the audio channels that they become, and the loudspeaker that each feeds. */
+export const createSetSchema = z.object({
+  name: z.string().trim().min(1, { error: 'Give the set a name.' }).max(200),
+  parts: z
+    .array(z.object({ deliverableId: idSchema, speaker: z.enum(speakers).exclude(['unknown']) }))
+    .min(2, { error: 'A set is made of two files at least.' })
+    .max(24, { error: 'A set is made of 24 files at the most.' })
+    .refine((parts) => new Set(parts.map((p) => p.speaker)).size === parts.length, {
+      error: 'Two files of the set feed the same loudspeaker.',
+    })
+    .refine((parts) => new Set(parts.map((p) => p.deliverableId)).size === parts.length, {
+      error: 'A file stands twice in the set.',
+    }),
+});
 
 /** How a deliverable is to be measured from now on. */
 export const setPlanSchema = z.object({

@@ -80,6 +80,8 @@ export const submissionReportSchema = submissionRowSchema.extend({
   ),
   /** Frames a second by which its times are counted, where the file tells none. */
   frameRate: frameRateSchema.nullable(),
+  /** Several mono files, which cannot be played as one. */
+  isSet: z.boolean(),
   specBody: specBodySchema,
   specVersionId: idSchema,
   /** Verdict under the version now in force, where that is another one. */

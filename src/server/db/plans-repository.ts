@@ -68,15 +68,25 @@ export async function findKnownFile(
 ): Promise<{
   format: z.infer<typeof formatSchema>;
   findings: z.infer<typeof findingSchema>[];
+  /** Measured whole: its times are the file's. */
+  isWhole: boolean;
 } | null> {
   const row = await db('measurements as m')
     .join('presentations as pr', 'pr.id', 'm.presentation_id')
     .where('m.deliverable_id', deliverableId)
     .modify(within(scope, 'm.organisation_id'))
     .orderByRaw('pr.plan_id IS NULL DESC, m.created_at DESC, m.id DESC')
-    .first<{ format: unknown; findings: unknown } | undefined>('m.format', 'm.findings');
+    .first<{ format: unknown; findings: unknown; plan_id: string | null } | undefined>(
+      'm.format',
+      'm.findings',
+      'pr.plan_id',
+    );
   return row
-    ? { format: formatSchema.parse(row.format), findings: z.array(findingSchema).parse(row.findings) }
+    ? {
+        format: formatSchema.parse(row.format),
+        findings: z.array(findingSchema).parse(row.findings),
+        isWhole: row.plan_id === null,
+      }
     : null;
 }
 

@@ -21,6 +21,8 @@ export interface SubmissionFreeze {
   storageKey: string;
   fileName: string;
   frameRate: FrameRateName | null;
+  /** Several mono files, which cannot be played as one. */
+  isSet: boolean;
 }
 
 export async function findSubmissionFreeze(
@@ -34,6 +36,7 @@ export async function findSubmissionFreeze(
         storage_key: string;
         file_name: string;
         frame_rate: string | null;
+        is_set: boolean;
       })
     | undefined = await db('submissions as s')
     .join('measurements as m', 'm.id', 's.measurement_id')
@@ -41,7 +44,14 @@ export async function findSubmissionFreeze(
     .join('deliverables as d', 'd.id', 's.deliverable_id')
     .where('s.id', id)
     .modify(ofEitherSide(scope))
-    .first(...measurementColumns, 'sv.body', 'd.storage_key', 'd.file_name', 'd.frame_rate');
+    .first(
+      ...measurementColumns,
+      'sv.body',
+      'd.storage_key',
+      'd.file_name',
+      'd.frame_rate',
+      db.raw('EXISTS (SELECT FROM deliverable_parts p WHERE p.deliverable_id = d.id) AS is_set'),
+    );
   if (!row) return null;
   return {
     measurement: toMeasurement(row),
@@ -49,6 +59,7 @@ export async function findSubmissionFreeze(
     storageKey: row.storage_key,
     fileName: row.file_name,
     frameRate: frameRateSchema.nullable().parse(row.frame_rate),
+    isSet: row.is_set,
   };
 }
 

@@ -15,6 +15,18 @@ export const measuringTaskSchema = z.object({
   byteSize: z.number(),
   sha256Declared: z.string().nullable(),
   plan: measuringPlanSchema,
+  /** The files of a set of mono files, in order; `null` for what is one file. */
+  parts: z
+    .array(
+      z.object({
+        storageKey: z.string(),
+        fileName: z.string(),
+        byteSize: z.number(),
+        sha256Declared: z.string().nullable(),
+        speaker: z.enum(speakers),
+      }),
+    )
+    .nullable(),
 });
 export type MeasuringTask = z.infer<typeof measuringTaskSchema>;
 

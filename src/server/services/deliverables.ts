@@ -22,6 +22,7 @@ import {
   type DeliverableRecord,
 } from '../db/deliverables-repository.ts';
 import { listJudgedBodies } from '../db/judged-specs-repository.ts';
+import { listSetParts, restoreParts } from '../db/mono-sets-repository.ts';
 import { findKnownFile, listPlans, readPlan } from '../db/plans-repository.ts';
 import { listPresentations, listPresentationVerdicts } from '../db/presentations-repository.ts';
 import { listProgrammes as listProgrammeRecords } from '../db/programmes-repository.ts';
@@ -137,12 +138,13 @@ export async function getDeliverableReport(scope: Scope, id: string): Promise<An
   if (!row) return noDeliverable;
   const [{ measurement, sha256, uploadedBy, measuredAt, replaces, planId, frameRate }] = records;
   const versionIds = [...new Set(row.channels.flatMap((channel) => channel.specVersionId ?? []))];
-  const [presentations, verdicts, plan, plans, known] = await Promise.all([
+  const [presentations, verdicts, plan, plans, known, parts] = await Promise.all([
     listPresentations(db(), scope, id),
     listPresentationVerdicts(db(), scope, id, versionIds),
     readPlan(db(), scope, planId),
     listPlans(db(), scope, id),
     findKnownFile(db(), scope, id),
+    listSetParts(db(), scope, id),
   ]);
   return done({
     ...row,
@@ -157,13 +159,14 @@ export async function getDeliverableReport(scope: Scope, id: string): Promise<An
         .filter(({ position }) => position === presentation.position)
         .map(({ specVersionId, verdict }) => ({ specVersionId, verdict })),
     })),
+    parts: parts.map(({ speaker, fileName, byteSize }) => ({ speaker, fileName, byteSize })),
     plan,
     frameRate,
     plans: plans.map((one) => ({ ...one, createdAt: one.createdAt.toISOString() })),
     file: known && {
       format: known.format,
       isOrderAssumed: known.findings.some(({ code }) => code === 'layout-assumed'),
-      lineUpToneEndSeconds: lineUpToneEnd(known.findings),
+      lineUpToneEndSeconds: known.isWhole ? lineUpToneEnd(known.findings) : null,
     },
     // A bench measures whole files.
     bench:
@@ -223,7 +226,7 @@ export async function patchDeliverables(
   });
 }
 
-/** Takes a deliverable out of every list. What was ever submitted stays, for the other side has seen it. */
+/** Takes a deliverable out of every list; the files of a set stand by themselves again. What was ever submitted stays, for the other side has seen it. */
 export async function discardDeliverable(scope: MemberScope, id: string): Promise<Answer<{ id: string }>> {
   const no = lacking(scope, 'deliverable:upload');
   if (no) return no;
@@ -239,6 +242,7 @@ export async function discardDeliverable(scope: MemberScope, id: string): Promis
         `It was submitted to ${submitted.channelName}, so it stays where both sides can read it.`,
       );
     await markDiscarded(trx, scope, id);
+    await restoreParts(trx, scope, id);
     await recordEvent(trx, scope, {
       organisationId: scope.organisationId,
       action: 'deliverable.discarded',

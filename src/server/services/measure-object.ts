@@ -1,12 +1,14 @@
-/** Measures one stored object: bytes in ranges, hash taken on the way, series put back. Knows no database. */
+/** Measures one stored object, or the several of a set: bytes in ranges, hash taken on the way, series put back. Knows no database. */
 import { engineVersion } from '../../engine/figures.ts';
 import { encodeSeries } from '../../engine/series.ts';
-import type { Measured } from '../../engine/measure.ts';
-import { UnreadableError, type ByteSource } from '../../engine/source.ts';
+import { measure, type Measured, type MeasureOptions } from '../../engine/measure.ts';
+import { joinMono } from '../../engine/containers/mono-set.ts';
+import { openNative } from '../../engine/containers/open.ts';
+import { UnreadableError, type ByteSource, type SampleSource } from '../../engine/source.ts';
 import { measureSource } from '../measuring/measure-source.ts';
 import type { MeasuringOutcome, MeasuringTask } from '../queue/measuring-contract.ts';
 import type { Progress } from '../queue/progress.ts';
-import { HashingSource } from '../storage/hashing-source.ts';
+import { HashingSource, hashOfParts } from '../storage/hashing-source.ts';
 import {
   headObject,
   ObjectMissing,
@@ -63,17 +65,29 @@ interface Options {
  */
 export async function measureObject(task: MeasuringTask, options: Options): Promise<MeasuringOutcome> {
   const began = performance.now();
-  let watched: WatchedSource | null = null;
+  const opened: WatchedSource[] = [];
+  const trouble = () => opened.find((source) => source.trouble)?.trouble;
   try {
-    const head = await headObject(task.storageKey);
-    if (!head) return { kind: 'file', ...missing, sha256: null };
-    watched = new WatchedSource(objectSource(task.storageKey, head.byteSize, options.signal), options.onRead);
-    const source = new HashingSource(watched);
-    const read = await readAll(task, source, options);
-    if (watched.trouble) throw watched.trouble;
-    const sha256 = await source.sha256();
-    if (task.sha256Declared !== null && sha256 !== task.sha256Declared)
-      return { kind: 'file', ...hashMismatch, sha256 };
+    const files = task.parts ?? [task];
+    const sources: HashingSource[] = [];
+    for (const { storageKey } of files) {
+      const head = await headObject(storageKey);
+      if (!head) return { kind: 'file', ...missing, sha256: null };
+      const watched = new WatchedSource(
+        objectSource(storageKey, head.byteSize, options.signal),
+        options.onRead,
+      );
+      opened.push(watched);
+      sources.push(new HashingSource(watched));
+    }
+    const read = await readAll(task, sources, options);
+    const failed = trouble();
+    if (failed) throw failed;
+    const hashes: string[] = [];
+    for (const source of sources) hashes.push(await source.sha256());
+    const sha256 = task.parts ? hashOfParts(hashes) : hashes[0];
+    const other = files.some((file, i) => file.sha256Declared !== null && file.sha256Declared !== hashes[i]);
+    if (other || sha256 === null) return { kind: 'file', ...hashMismatch, sha256 };
     if (!read.ok) return { kind: 'file', code: read.code, message: read.message, sha256 };
     const parametersHash = planHash(task.plan);
     const presentations = [];
@@ -91,29 +105,52 @@ export async function measureObject(task: MeasuringTask, options: Options): Prom
       measuringSeconds: (performance.now() - began) / 1000,
     };
   } catch (error) {
-    return troubleOf(watched?.trouble ?? error, options.signal);
+    return troubleOf(trouble() ?? error, options.signal);
   }
 }
 
 /** The engine's answer; a file that it cannot read is an answer too, so that the hash is looked at all the same. */
 async function readAll(
   task: MeasuringTask,
-  source: ByteSource,
+  sources: readonly ByteSource[],
   { onProgress, signal, scratchDir }: Options,
 ): Promise<{ ok: true; measured: Measured[] } | { ok: false; code: string; message: string }> {
   try {
-    const measured = await measureSource(source, task.fileName, {
+    const how: MeasureOptions = {
       plan: task.plan,
       onProgress: (secondsDone, secondsTotal) => onProgress({ secondsDone, secondsTotal }),
       signal,
-      scratchDir,
-    });
+    };
+    const measured = task.parts
+      ? await measure(await openSet(task.parts, sources), how)
+      : await measureSource(sources[0], task.fileName, { ...how, scratchDir });
     return { ok: true, measured };
   } catch (error) {
     if (error instanceof UnreadableError && !signal.aborted)
       return { ok: false, code: error.code, message: error.message };
     throw error;
   }
+}
+
+/** The files of a set as one source. Only files that are read natively: nobody delivers a set in coded ones. */
+async function openSet(
+  parts: NonNullable<MeasuringTask['parts']>,
+  sources: readonly ByteSource[],
+): Promise<SampleSource> {
+  const opened: SampleSource[] = [];
+  for (const [i, { fileName }] of parts.entries()) {
+    const source = await openNative(sources[i]);
+    if (!source)
+      throw new UnreadableError(
+        'not-audio',
+        `${fileName} is no WAV or AIFF, which the files of a set must be. Discard the set, and deliver that file in another form.`,
+      );
+    opened.push(source);
+  }
+  return joinMono(
+    opened,
+    parts.map(({ speaker }) => speaker),
+  );
 }
 
 function troubleOf(error: unknown, signal: AbortSignal): MeasuringOutcome {

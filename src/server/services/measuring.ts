@@ -13,6 +13,7 @@ import {
   type DeliverableCore,
 } from '../db/deliverable-writes-repository.ts';
 import { ensurePresentation, insertMeasurement } from '../db/measurements-repository.ts';
+import { listSetParts } from '../db/mono-sets-repository.ts';
 import { readPlan } from '../db/plans-repository.ts';
 import { publishEvent } from '../events.ts';
 import { log } from '../log.ts';
@@ -56,7 +57,10 @@ export async function measureDeliverable(
   if (!deliverable) return endWithoutStart(deliverableId);
   await tell(deliverable, 'measuring', null);
 
-  const plan = await readPlan(db(), scope, deliverable.planId);
+  const [plan, parts] = await Promise.all([
+    readPlan(db(), scope, deliverable.planId),
+    listSetParts(db(), scope, deliverableId),
+  ]);
   let outcome: MeasuringOutcome;
   try {
     outcome = await measureElsewhere(
@@ -68,6 +72,7 @@ export async function measureDeliverable(
         byteSize: deliverable.byteSize,
         sha256Declared: deliverable.sha256Declared,
         plan,
+        parts: parts.length > 0 ? parts : null,
       },
       { onProgress: (progress) => void tell(deliverable, 'measuring', progress), signal },
     );

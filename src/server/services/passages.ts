@@ -7,6 +7,7 @@ import { decodeSeries } from '../../engine/series.ts';
 import { db } from '../db/connection.ts';
 import { readDeliverables, type MeasurementRecord } from '../db/deliverables-repository.ts';
 import { listJudgedBodies } from '../db/judged-specs-repository.ts';
+import { listSetParts } from '../db/mono-sets-repository.ts';
 import { listFrozenPresentations, listPresentations } from '../db/presentations-repository.ts';
 import { findSubmissionFreeze } from '../db/submission-details-repository.ts';
 import { log } from '../log.ts';
@@ -16,6 +17,10 @@ import { getObject, ObjectMissing, presignedGet, StorageTrouble } from '../stora
 
 const noDeliverable = refuse('not_found', 'There is no such deliverable.');
 const noSubmission = refuse('not_found', 'There is no such submission.');
+const isSet = refuse(
+  'conflict',
+  'This is a set of mono files, which a browser cannot play as one. Its curve and figures stand.',
+);
 const noPresentation = (count: number) =>
   refuse(
     'not_found',
@@ -102,6 +107,7 @@ export async function getDeliverableAudio(scope: Scope, id: string): Promise<Ans
   const [deliverable] = await readDeliverables(db(), scope, [id]);
   if (!deliverable) return noDeliverable;
   if (deliverable.state === 'uploading') return notArrived;
+  if ((await listSetParts(db(), scope, id)).length > 0) return isSet;
   return done({ url: await presignedGet(deliverable.storageKey, deliverable.fileName) });
 }
 
@@ -110,5 +116,6 @@ export async function getSubmissionAudio(scope: Scope, id: string): Promise<Answ
   const no = lacking(scope, 'submission:read');
   if (no) return no;
   const frozen = await findSubmissionFreeze(db(), scope, id);
+  if (frozen?.isSet) return isSet;
   return frozen ? done({ url: await presignedGet(frozen.storageKey, frozen.fileName) }) : noSubmission;
 }

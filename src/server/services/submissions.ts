@@ -141,6 +141,7 @@ export async function getSubmissionReport(scope: Scope, id: string): Promise<Ans
       measurement: toMeasurementAnswer(one.measurement),
     })),
     frameRate: frozen.frameRate,
+    isSet: frozen.isSet,
     specBody: frozen.specBody,
     specVersionId: record.specVersionId,
     underNewer:

@@ -40,3 +40,9 @@ export class HashingSource implements ByteSource {
     return this.#hash.digest('hex');
   }
 }
+
+/** One hash for a set of files: of their own hashes in order, a line each. `null` where one of them is not known. */
+export function hashOfParts(hashes: readonly (string | null)[]): string | null {
+  if (hashes.includes(null)) return null;
+  return createHash('sha256').update(hashes.join('\n')).digest('hex');
+}

@@ -281,6 +281,9 @@ export function closeStorage(): void {
 
 export const originalKey = (organisationId: string, deliverableId: string) =>
   `originals/${organisationId}/${deliverableId}`;
+/** Names a set of files; nothing lies there, for its files lie where they were sent. */
+export const setKey = (organisationId: string, deliverableId: string) =>
+  `sets/${organisationId}/${deliverableId}`;
 /** One series per deliverable, engine version, parameters and place of the presentation, as measurements are unique by them. */
 export const seriesKey = (
   organisationId: string,

@@ -124,6 +124,26 @@ describe('a measuring plan', () => {
     expect(passage.truePeakDbtp).toHaveLength(60);
   });
 
+  it('is offered the end of a line-up tone, and offers it still when it is left out', async () => {
+    const id = await arrivedFile(
+      chain.mixer,
+      manyTrackWave(
+        [
+          { dbfs: -18, to: 3 },
+          { dbfs: -18, to: 3 },
+        ],
+        6,
+      ),
+    );
+    await measure(id);
+    expect((await report(id)).file?.lineUpToneEndSeconds).toBeCloseTo(3, 0);
+    valueOf(await put(id, { ...wholeFile, window: { startSeconds: 3.1, endSeconds: null } }));
+    await measure(id);
+    const { file, measurement } = await report(id);
+    expect(measurement?.findings.map(({ code }) => code)).not.toContain('line-up-tone');
+    expect(file?.lineUpToneEndSeconds).toBeCloseTo(3, 0);
+  });
+
   it('keeps every measurement, and finds it again when an earlier plan is set anew', async () => {
     const id = await measuredFile();
     valueOf(await put(id, twoPairs));

@@ -19,6 +19,7 @@ const task = (fileName: string) => ({
   byteSize: 1,
   sha256Declared: null,
   plan: wholeFile,
+  parts: null,
 });
 const measure = (fileName: string, signal = new AbortController().signal, told: Progress[] = []) =>
   children.measure(task(fileName), { onProgress: (progress) => void told.push(progress), signal });
