@@ -1,5 +1,5 @@
 /** Measures a file wherever its bytes lie: natively from byte ranges, or staged on scratch disk and decoded. */
-import { mkdtemp, open, rm } from 'node:fs/promises';
+import { mkdtemp, open, rm, type FileHandle } from 'node:fs/promises';
 import { tmpdir } from 'node:os';
 import { join, resolve } from 'node:path';
 import { openNative } from '../../engine/containers/open.ts';
@@ -20,18 +20,17 @@ async function measureFrom(
   const native = await openNative(bytes);
   if (native) return measure(native, options);
   // Only here: what is read natively need not wait for the decoder's modules.
-  const [{ DecodedSource }, { probe }, { stage }] = await Promise.all([
-    import('./decoded-source.ts'),
-    import('./probe.ts'),
-    import('./staging.ts'),
-  ]);
+  const { openDecoded, stagedName, stage } = await import('./staging.ts');
   const signal = options.signal ?? neverAborted;
   const folder = await mkdtemp(join(scratchDir, 'plimsoll-'));
   try {
-    const local = path === null ? join(folder, 'input') : resolve(path);
-    if (path === null) await stage(bytes, local, signal);
-    const probed = await probe(local, signal, options.plan?.stream);
-    return await measure(new DecodedSource(local, probed, folder), options);
+    const terms = { folder, staged: path === null, signal, wanted: options.plan?.stream };
+    if (path !== null) return await measure(await openDecoded(resolve(path), bytes, terms), options);
+    const staged = join(folder, stagedName);
+    await stage(bytes, staged, signal);
+    return await withFile(staged, async (local) =>
+      measure(await openDecoded(stagedName, local, terms), options),
+    );
   } finally {
     await rm(folder, { recursive: true, force: true });
   }
@@ -45,21 +44,27 @@ export const measureSource = (
 ) => measureFrom(bytes, null, options.scratchDir ?? tmpdir(), options);
 
 /** Measures a local file. Throws UnreadableError or the file system's errors. */
-export async function measureFile(path: string, options: MeasureOptions = {}) {
+export const measureFile = (path: string, options: MeasureOptions = {}) =>
+  withFile(path, (bytes) => measureFrom(bytes, path, tmpdir(), options));
+
+async function withFile<T>(path: string, use: (bytes: ByteSource) => Promise<T>): Promise<T> {
   const file = await open(path, 'r');
   try {
-    const { size } = await file.stat();
-    const bytes: ByteSource = {
-      size,
-      async read(offset, length, into) {
-        const wanted = Math.max(0, Math.min(length, size - offset));
-        const out = into && into.length >= wanted ? into : new Uint8Array(wanted);
-        const { bytesRead } = await file.read(out, 0, wanted, offset);
-        return out.subarray(0, bytesRead);
-      },
-    };
-    return await measureFrom(bytes, path, tmpdir(), options);
+    return await use(await rangesOf(file));
   } finally {
     await file.close();
   }
+}
+
+async function rangesOf(file: FileHandle): Promise<ByteSource> {
+  const { size } = await file.stat();
+  return {
+    size,
+    async read(offset, length, into) {
+      const wanted = Math.max(0, Math.min(length, size - offset));
+      const out = into && into.length >= wanted ? into : new Uint8Array(wanted);
+      const { bytesRead } = await file.read(out, 0, wanted, offset);
+      return out.subarray(0, bytesRead);
+    },
+  };
 }

@@ -1,7 +1,14 @@
-/** Puts a file on scratch disk, where a decoder can seek in it. */
+/** Puts a file on scratch disk, where a decoder can seek in it, and opens it for decoding. */
 import { open, statfs } from 'node:fs/promises';
 import { dirname } from 'node:path';
 import type { ByteSource } from '../../engine/source.ts';
+import { readHints } from './container-hints.ts';
+import { DecodedSource, type DecodeTerms } from './decoded-source.ts';
+import { handOver } from './jail.ts';
+import { probe } from './probe.ts';
+
+/** A name of our own: nothing of the sender's reaches a command line. */
+export const stagedName = 'input';
 
 const pieceBytes = 4 * 1024 ** 2;
 /** What is left free for everybody else. */
@@ -34,6 +41,17 @@ export async function stage(bytes: ByteSource, path: string, signal: AbortSignal
   } finally {
     await file.close();
   }
+  await Promise.all([handOver(dirname(path)), handOver(path)]);
 }
 
 const megabytes = (bytes: number) => Math.ceil(bytes / 1e6);
+
+/** `path`: absolute, or within the private folder. Throws UnreadableError or the surroundings' errors. */
+export async function openDecoded(
+  path: string,
+  bytes: ByteSource,
+  terms: DecodeTerms & { signal: AbortSignal; wanted?: number },
+): Promise<DecodedSource> {
+  const [probed, hints] = await Promise.all([probe(path, terms), readHints(bytes)]);
+  return new DecodedSource(path, probed, hints, terms);
+}
