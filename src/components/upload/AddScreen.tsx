@@ -7,6 +7,7 @@ import { useLiveEvents } from '@/components/live/use-live-events.ts';
 import { Notice } from '@/components/look/Notice.tsx';
 import { deliverableListSchema, uploadListSchema, type Upload } from '@/domain/api/deliverables.ts';
 import { guessFromFileName } from '@/domain/file-name-guess.ts';
+import { findMonoSets } from '@/engine/containers/mono-set.ts';
 import { ArrivingTable } from './ArrivingTable.tsx';
 import { ProgressBar } from './ProgressBar.tsx';
 import { SetOffers } from './SetOffers.tsx';
@@ -69,10 +70,14 @@ function Screen({ channels, programmes, unfinished }: Props) {
     if (event.kind !== 'presence' && !(event.kind === 'deliverable' && event.progress)) refresh();
   });
 
-  const take = (files: File[]) =>
+  const take = (files: File[]) => {
+    // What tells the files of a set apart is no part of the programme's name.
+    const setNames = new Map(
+      findMonoSets(files).flatMap(({ name, parts }) => parts.map((part) => [part.file, name])),
+    );
     void queue.add(
       files.map((file) => {
-        const { versionLabel, ...guess } = guessFromFileName(file.name, programmes);
+        const { versionLabel, ...guess } = guessFromFileName(setNames.get(file) ?? file.name, programmes);
         return {
           file,
           details: {
@@ -83,6 +88,7 @@ function Screen({ channels, programmes, unfinished }: Props) {
         };
       }),
     );
+  };
   useEffect(() => {
     const hold = (event: DragEvent) => {
       if (!event.dataTransfer?.types.includes('Files')) return;
