@@ -1,4 +1,5 @@
 /** Scratch folders of measuring processes, named by process, so that what a killed one left behind can be taken away. */
+import { readFileSync } from 'node:fs';
 import { mkdir, readdir, rm } from 'node:fs/promises';
 import { join } from 'node:path';
 import { config } from '../config.ts';
@@ -19,9 +20,20 @@ export const removeScratch = (pid: number): Promise<void> =>
 function isAlive(pid: number): boolean {
   try {
     process.kill(pid, 0);
-    return true;
   } catch (error) {
     return error instanceof Error && 'code' in error && error.code === 'EPERM';
+  }
+  return !isZombie(pid);
+}
+
+/** Ended, but nobody has looked after it: where a container's first process does not, it stays so. */
+function isZombie(pid: number): boolean {
+  try {
+    // proc(5): the state stands behind the name, which ends with the last bracket.
+    return /\) Z [^)]*$/.test(readFileSync(`/proc/${pid}/stat`, 'utf8'));
+  } catch {
+    // No such table on this system, or it has gone by now: what kill() said stands.
+    return false;
   }
 }
 
