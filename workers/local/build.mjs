@@ -51,6 +51,26 @@ function step(name, args) {
 /** Compiles the measuring kernel where its source changed; whoever runs the sources needs it. */
 export const buildKernel = () => step('Building the kernel', [join(root, 'src/engine/kernel/build.mjs')]);
 
+/** Bundles entry points of processes for Node. What they import late is loaded late. */
+export async function bundleProcesses(entryPoints, outdir) {
+  const esbuild = await import('esbuild');
+  await esbuild.build({
+    entryPoints,
+    outdir,
+    outExtension: { '.js': '.mjs' },
+    bundle: true,
+    platform: 'node',
+    target: 'node20',
+    format: 'esm',
+    splitting: true,
+    chunkNames: 'parts/[name]-[hash]',
+    packages: 'external',
+    sourcemap: true,
+    absWorkingDir: root,
+    logLevel: 'error',
+  });
+}
+
 /** Builds when a source changed. Throws the builder's words when a step fails. */
 export async function build({ force = false } = {}) {
   const state = stateOfSources();
@@ -61,23 +81,7 @@ export async function build({ force = false } = {}) {
   const entries = readdirSync(join(root, 'workers'))
     .filter((name) => name.endsWith('.ts'))
     .map((name) => join(root, 'workers', name));
-  const esbuild = await import('esbuild');
-  await esbuild.build({
-    entryPoints: entries,
-    outdir: join(root, 'dist/workers'),
-    outExtension: { '.js': '.mjs' },
-    bundle: true,
-    platform: 'node',
-    target: 'node20',
-    format: 'esm',
-    // What is imported late is loaded late.
-    splitting: true,
-    chunkNames: 'parts/[name]-[hash]',
-    packages: 'external',
-    sourcemap: true,
-    absWorkingDir: root,
-    logLevel: 'error',
-  });
+  await bundleProcesses(entries, join(root, 'dist/workers'));
   writeFileSync(mark, state);
   return true;
 }
