@@ -100,8 +100,9 @@ try {
     ...howItIsMade,
   ];
   console.log(`\n${[...tables, foot.join('\n')].join('\n\n')}`);
-  if (json)
-    writeFileSync(json, `${JSON.stringify({ machine, rounds, idle, ratios, browser, growth }, null, 1)}\n`);
+  const results = { machine, rounds, idle, ratios, browser, growth };
+  // npm runs scripts in the project's folder; a name is meant from where the person stands.
+  if (json) writeFileSync(resolve(process.env.INIT_CWD ?? '.', json), `${JSON.stringify(results, null, 1)}\n`);
 } finally {
   clean();
 }
