@@ -58,7 +58,7 @@ export function PatchGrid({ trackNames, columns, onChange }: Props) {
               {columns.map((column, at) => (
                 <td key={at} className={column.speakers[channel] ? 'bg-pick' : undefined}>
                   <select
-                    className={`field border-transparent! hover:border-muted! ${column.speakers[channel] ? 'font-semibold' : 'text-muted!'}`}
+                    className={`field border-transparent! bg-transparent! hover:border-muted! ${column.speakers[channel] ? 'font-semibold' : 'text-muted!'}`}
                     aria-label={`Audio channel ${channel + 1} in ${column.name || `presentation ${at + 1}`}`}
                     value={column.speakers[channel] ?? ''}
                     onChange={({ target: { value } }) =>

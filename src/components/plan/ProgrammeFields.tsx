@@ -27,7 +27,9 @@ export function ProgrammeFields({ form, format, toneEndSeconds, fault, onChange 
   const share = (value: number) => Math.min(1, Math.max(0, value / (format.durationSeconds || 1))) * 100;
   const left = share(seconds(form.from, 0));
   const right = share(seconds(form.to, format.durationSeconds));
-  const toneEnd = toneEndSeconds === null ? null : nextTime(clock, toneEndSeconds);
+  // A file that is all tone has no programme after it.
+  const leavesProgramme = toneEndSeconds !== null && toneEndSeconds < format.durationSeconds - 1;
+  const toneEnd = leavesProgramme ? nextTime(clock, toneEndSeconds) : null;
   return (
     <fieldset className="grid gap-3">
       <legend className="mb-1 text-[14px] font-semibold">Programme</legend>
@@ -93,7 +95,7 @@ export function ProgrammeFields({ form, format, toneEndSeconds, fault, onChange 
                   onChange(withRate(form, isRate(value) ? value : null, format))
                 }
               >
-                <option value="">none: hours, minutes, seconds</option>
+                <option value="">none</option>
                 {frameRateNames.map((name) => (
                   <option key={name} value={name}>
                     {name}
