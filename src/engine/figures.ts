@@ -21,7 +21,7 @@ export interface AudioFormat {
   durationSeconds: number;
   /** Of a coded stream; `null` for samples stored as they are. */
   bitRateKbps?: number | null;
-  /** Every audio stream, where the file has several. */
+  /** Every audio stream, where the file has several; neighbouring mono tracks that are alike count as one. */
   streams?: AudioStream[];
   /** Of the first sample, since midnight (bext). */
   startTimeReferenceSamples?: number;
@@ -42,7 +42,7 @@ export interface DeclaredLoudness {
   shortTermMaxLufs: number | null;
 }
 
-/** One audio stream of a container that holds several. */
+/** One audio stream of a container that holds several; `MeasuringPlan.stream` counts these. */
 export interface AudioStream {
   codec: string;
   channels: number;

@@ -108,6 +108,33 @@ describe('coded samples', () => {
   });
 });
 
+describe('5.1', () => {
+  beforeAll(() =>
+    // Each audio channel softer than the one before, so that any other order shows.
+    ffmpeg(
+      ...['-f', 'lavfi', '-i', 'anoisesrc=color=pink:seed=1:duration=4:sample_rate=48000,lowpass=f=100'],
+      ...['-af', 'pan=5.1|c0=c0|c1=0.7*c0|c2=0.5*c0|c3=0.35*c0|c4=0.25*c0|c5=0.18*c0'],
+      ...['-c:a', 'pcm_s24le', 'six-wide.wav'],
+    ),
+  );
+  it.each([
+    ['wide.flac', []],
+    ['wide.m4a', ['-c:a', 'aac', '-b:a', '640k']],
+    ['wide.ac3', ['-b:a', '640k']],
+    ['wide.ogg', ['-c:a', 'libvorbis', '-q:a', '9']],
+    ['wide.opus', ['-c:a', 'libopus', '-b:a', '510k']],
+    ['wide.mov', ['-c:a', 'pcm_s24le']],
+  ])('keeps every loudspeaker in its place: %s', async (name, args) => {
+    ffmpeg('-i', 'six-wide.wav', ...args, name);
+    const { presentation, measurement } = await measured(name);
+    expect(measurement.format.layout).toBe('5.1');
+    expect(presentation.speakers).toEqual(['L', 'R', 'C', 'LFE', 'Ls', 'Rs']);
+    expect(codes({ measurement } as Measured)).not.toContain('layout-assumed');
+    const peaks = measurement.figures.truePeak.perChannelDbtp.map((peak) => peak ?? -Infinity);
+    expect(peaks).toEqual([...peaks].sort((a, b) => b - a));
+  });
+});
+
 describe('files that are damaged', () => {
   beforeAll(() => {
     toFile('whole.mp3', '-b:a', '192k');
