@@ -1,5 +1,6 @@
 /** The demo's deliverables: a season in two layouts, a children's series, two podcasts, a dozen adverts, with known faults. */
 import type { ContentKind } from '../../src/domain/vocabulary.ts';
+import type { DemoFault } from './faults.ts';
 import type { Character, Layout } from './synthesis.ts';
 
 export interface DemoDeliverable {
@@ -22,6 +23,8 @@ export interface DemoDeliverable {
   over?: { audioChannel: number; truePeakDbtp: number; at: number };
   /** Cuts the written file short by this share: the header promises more. */
   truncateShare?: number;
+  /** What else is wrong with it. */
+  fault?: DemoFault;
   /** What happens to it after measuring: nothing, or put to its first channel and perhaps decided. */
   then: 'keep' | 'submit' | 'approve' | { reject: string } | { waive: string };
   /** Put on air this many hours after the seed; `null`: no date. */
@@ -173,4 +176,61 @@ export const deliverables: DemoDeliverable[] = [
   spot(10, fennel, { targetLufs: -23.1 }),
   spot(11, fennel, { targetLufs: -23 }),
   spot(12, fennel, { targetLufs: -23.3, then: 'keep' }),
+  ...(
+    [
+      ['2.13', 'line-up-tone', { seconds: 32 }],
+      ['2.14', 'drop-outs', { then: 'submit' }],
+      ['2.15', 'long-silence', {}],
+      ['2.16', 'dual-mono', {}],
+      ['2.17', 'out-of-phase', { then: 'submit' }],
+      ['2.18', 'unused-bits', {}],
+      ['2.19', 'declares-wrong', { targetLufs: -21.6 }],
+    ] as [string, DemoFault, Partial<DemoDeliverable>][]
+  ).map(([episode, fault, rest]): DemoDeliverable => ({
+    by: rooks,
+    fileName: `small_gales_${episode.replace('.', '')}_st_v1.wav`,
+    programme: 'Small Gales',
+    episode,
+    version: 'Full mix stereo',
+    kind: 'long_form',
+    channels: ['harrow-kids'],
+    character: 'children',
+    layout: 'stereo',
+    seconds: 20,
+    targetLufs: -23,
+    then: 'keep',
+    fault,
+    ...rest,
+  })),
+  ...(
+    [
+      ['13', 'clipped', { targetLufs: -12 }],
+      ['14', 'dc-offset', {}],
+      ['15', 'silent-right', {}],
+      ['16', 'band-limited', {}],
+    ] as [string, DemoFault, Partial<DemoDeliverable>][]
+  ).map(([episode, fault, rest]): DemoDeliverable => ({
+    by: fennel,
+    fileName: `salt_and_signal_ep${episode}.wav`,
+    programme: 'Salt & Signal',
+    episode,
+    version: 'Master',
+    kind: 'podcast_episode',
+    channels: ['salt-and-signal'],
+    character: 'talk',
+    layout: 'stereo',
+    seconds: 20,
+    targetLufs: -18,
+    sampleRateHz: 44100,
+    then: 'keep',
+    fault,
+    ...rest,
+  })),
+  tallow(4, '5.1', {
+    fileName: 'tallow_104_mix51_v2.wav',
+    version: 'Full mix 5.1, v2',
+    fault: 'lfe-swapped',
+    seconds: 20,
+    then: 'keep',
+  }),
 ];

@@ -3,6 +3,7 @@ import wavefile from 'wavefile';
 import { Meter } from '../../src/engine/meter.ts';
 import { layoutOfCount } from '../../src/engine/layouts.ts';
 import type { DemoDeliverable } from './demo-programmes.ts';
+import { addFault, declareLoudness } from './faults.ts';
 import { addOver, applyGain, limit, synthesise } from './synthesis.ts';
 
 const ceilingDbfs = -3;
@@ -58,6 +59,7 @@ export function makeMaster(demo: DemoDeliverable, seed: number): Uint8Array {
       demo.over.truePeakDbtp,
       sampleRateHz,
     );
+  if (demo.fault) addFault(planar, demo.fault, sampleRateHz);
   const depth = demo.bitDepth ?? '24';
   const full = 2 ** (Number(depth) - 1);
   const integers = planar.map((audioChannel) =>
@@ -66,6 +68,7 @@ export function makeMaster(demo: DemoDeliverable, seed: number): Uint8Array {
   const wave = new wavefile.WaveFile();
   wave.fromScratch(integers.length, sampleRateHz, depth, integers.length === 1 ? integers[0] : integers);
   if (demo.layout === '5.1') nameSurround(wave);
-  const bytes = wave.toBuffer();
+  const written = wave.toBuffer();
+  const bytes = demo.fault === 'declares-wrong' ? declareLoudness(written) : written;
   return demo.truncateShare ? bytes.subarray(0, Math.round(bytes.length * (1 - demo.truncateShare))) : bytes;
 }
