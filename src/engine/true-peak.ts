@@ -1,8 +1,8 @@
 /**
- * True peak in its first form: the 48-coefficient interpolator of ITU-R BS.1770-5 Annex 2, as four phases of 12 taps.
- * Order: each row convolves the newest sample first. It stays as the oracle of every faster form.
+ * True peak in the standard's own form: the 48-coefficient interpolator of ITU-R BS.1770-5 Annex 2, as four phases of 12
+ * taps, each row convolving the newest sample first. What ships (interpolator.ts) reads closer; this stays as its oracle.
  */
-export const phases: readonly Float64Array[] = (
+const phases: readonly Float64Array[] = (
   [
     [
       0.001708984375, 0.010986328125, -0.0196533203125, 0.033203125, -0.0594482421875, 0.1373291015625,
@@ -23,13 +23,25 @@ export const phases: readonly Float64Array[] = (
   ] as const
 ).map((row) => Float64Array.from(row));
 
-export const taps = 12;
-/** The interpolated points of a convolution lie between the samples 6 and 5 before its newest: they count for the earlier. */
-export const delaySamples = 6;
+const taps = 12;
 
 /**
  * The phases that make a grid of at least 176.4 kHz: all four below 88.2 kHz, two from there on. Two also at 176.4 kHz and
  * above, where the samples alone would do for sound under 20 kHz but miss EBU Tech 3341's signals, which scale with the rate.
  */
-export const phasesFor = (sampleRateHz: number): readonly Float64Array[] =>
+const phasesFor = (sampleRateHz: number): readonly Float64Array[] =>
   sampleRateHz < 88_200 ? phases : [phases[0], phases[2]];
+
+/** Largest of the samples and of the points between them, linear; silence stands around the samples. */
+export function annex2Peak(samples: ArrayLike<number>, sampleRateHz: number): number {
+  let peak = 0;
+  for (let newest = 0; newest < samples.length + taps - 1; newest++) {
+    peak = Math.max(peak, Math.abs(samples[newest] ?? 0));
+    for (const phase of phasesFor(sampleRateHz)) {
+      let sum = 0;
+      for (let k = 0; k < taps; k++) sum += phase[k] * (samples[newest - k] ?? 0);
+      peak = Math.max(peak, Math.abs(sum));
+    }
+  }
+  return peak;
+}
