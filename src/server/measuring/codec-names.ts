@@ -27,7 +27,7 @@ export const codecName = (name: string): string =>
         : name);
 
 /** Codecs that keep whole samples; of the others a number of bits would say nothing. */
-const isLossless = (name: string) =>
+export const isLossless = (name: string): boolean =>
   (name.startsWith('pcm_') && !name.endsWith('law')) ||
   ['flac', 'alac', 'wavpack', 'tta', 'ape', 'tak'].includes(name);
 

@@ -5,7 +5,7 @@ import type { AudioFormat } from '../../engine/figures.ts';
 import { layoutOfCount, layoutOfDecoder, type Layout } from '../../engine/layouts.ts';
 import { UnreadableError } from '../../engine/source.ts';
 import { log } from '../log.ts';
-import { codecName, codedBits, containerName } from './codec-names.ts';
+import { codecName, codedBits, containerName, isLossless } from './codec-names.ts';
 import { reasonOfProbe } from './decoder-words.ts';
 import { jailed, throwIfNotLaunched } from './jail.ts';
 import { tracksOf, type Track } from './tracks.ts';
@@ -105,10 +105,15 @@ export async function probe(
     streamIndexes: track.streams.map((s) => s.index),
     sampleFormat: stream.sample_fmt.replace(/p$/, ''),
     toldSeconds: estimated.includes(format.format_name) ? null : duration,
-    // A length of the whole container may be that of its picture.
-    toldToleranceSeconds: own === null ? 0.5 + 0.01 * (duration ?? 0) : 0.15,
+    toldToleranceSeconds: own === null ? 0.5 + 0.01 * (duration ?? 0) : toleranceOf(stream.codec_name),
   };
 }
+
+/**
+ * How far a track's own length may be off; that of a whole container may be its picture's. Whole samples are counted, and
+ * a lost edit unit of an MXF (16.7 ms at 60 per second) must show; coders begin and end with some frames of their own.
+ */
+const toleranceOf = (codec: string): number => (isLossless(codec) ? 0.012 : 0.15);
 
 const layoutOf = ({ streams }: Track): Layout =>
   streams.length > 1

@@ -179,6 +179,17 @@ describe('files that are damaged', () => {
     },
   );
 
+  it('tell of a single edit unit that an MXF lost', async () => {
+    const own = await measured(
+      write('whole.mxf', (bytes) => {
+        const at = bytes.length >> 1;
+        return Buffer.concat([bytes.subarray(0, at), bytes.subarray(at + 3000)]);
+      }),
+    );
+    expect(own.measurement.figures.measuredSeconds).toBeCloseTo(4 - 1 / 25, 6);
+    expect(faults(own)).toContain('truncated');
+  });
+
   it('tell of more sound than they admit to', async () => {
     const own = await measured(write('whole.mp3', (bytes) => Buffer.concat([bytes, bytes])));
     expect(faults(own)).toContain('size-lies');
