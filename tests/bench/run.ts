@@ -102,7 +102,8 @@ try {
   console.log(`\n${[...tables, foot.join('\n')].join('\n\n')}`);
   const results = { machine, rounds, idle, ratios, browser, growth };
   // npm runs scripts in the project's folder; a name is meant from where the person stands.
-  if (json) writeFileSync(resolve(process.env.INIT_CWD ?? '.', json), `${JSON.stringify(results, null, 1)}\n`);
+  if (json)
+    writeFileSync(resolve(process.env.INIT_CWD ?? '.', json), `${JSON.stringify(results, null, 1)}\n`);
 } finally {
   clean();
 }
