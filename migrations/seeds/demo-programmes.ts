@@ -71,6 +71,55 @@ const kettle = 'mix@copperkettle.example';
 const fennel = 'mix@fennellane.example';
 const rooks = 'mix@tworooks.example';
 
+const gales = (episode: string, rest: Partial<DemoDeliverable>): DemoDeliverable => ({
+  by: rooks,
+  fileName: `small_gales_${episode.replace('.', '')}_st_v1.wav`,
+  programme: 'Small Gales',
+  episode,
+  version: 'Full mix stereo',
+  kind: 'long_form',
+  channels: ['harrow-kids'],
+  character: 'children',
+  layout: 'stereo',
+  seconds: 30,
+  targetLufs: -23,
+  then: 'submit',
+  airsInHours: 40,
+  ...rest,
+});
+
+const podcasts = {
+  'salt-and-signal': { by: fennel, programme: 'Salt & Signal' },
+  'third-lantern': { by: rooks, programme: 'Third Lantern' },
+} as const;
+const podcast = (
+  channel: keyof typeof podcasts,
+  episode: string,
+  rest: Partial<DemoDeliverable>,
+): DemoDeliverable => ({
+  ...podcasts[channel],
+  fileName: `${channel.replaceAll('-', '_')}_ep${episode.padStart(2, '0')}.wav`,
+  episode,
+  version: 'Master',
+  kind: 'podcast_episode',
+  channels: [channel],
+  character: 'talk',
+  layout: 'stereo',
+  seconds: 40,
+  targetLufs: -18,
+  sampleRateHz: 44100,
+  then: 'submit',
+  ...rest,
+});
+
+/** A master with a fault beside its loudness: short, and kept by its supplier unless it says otherwise. */
+const faulty = (fault: DemoFault): Partial<DemoDeliverable> => ({
+  fault,
+  seconds: 20,
+  then: 'keep',
+  airsInHours: undefined,
+});
+
 export const deliverables: DemoDeliverable[] = [
   tallow(4, 'stereo', { targetLufs: -20.1, then: 'keep' }),
   tallow(4, '5.1', { over: { audioChannel: 4, truePeakDbtp: 0.3, at: 0.7 }, then: 'keep' }),
@@ -91,76 +140,24 @@ export const deliverables: DemoDeliverable[] = [
   tallow(7, '5.1', { targetLufs: -23.1 }),
   tallow(8, 'stereo', { targetLufs: -23.4, then: 'keep' }),
   tallow(8, '5.1', { targetLufs: -23, then: 'keep' }),
-  ...(
-    [
-      ['2.10', { targetLufs: -23.3, then: 'approve' }],
-      ['2.11', { seconds: 64, quietPassageDb: 16, targetLufs: -22.8 }],
-      [
-        '2.12',
-        {
-          targetLufs: -19.4,
-          then: {
-            reject:
-              'Loud by more than 3 LU from the first scene on. Bring the whole mix down; the peaks are fine.',
-          },
-        },
-      ],
-    ] as [string, Partial<DemoDeliverable>][]
-  ).map(([episode, rest]): DemoDeliverable => ({
-    by: rooks,
-    fileName: `small_gales_${episode.replace('.', '')}_st_v1.wav`,
-    programme: 'Small Gales',
-    episode,
-    version: 'Full mix stereo',
-    kind: 'long_form',
-    channels: ['harrow-kids'],
-    character: 'children',
-    layout: 'stereo',
-    seconds: 30,
-    targetLufs: -23,
-    then: 'submit',
-    airsInHours: 40,
-    ...rest,
-  })),
-  {
-    by: rooks,
+  gales('2.10', { targetLufs: -23.3, then: 'approve' }),
+  gales('2.11', { seconds: 64, quietPassageDb: 16, targetLufs: -22.8 }),
+  gales('2.12', {
+    targetLufs: -19.4,
+    then: {
+      reject: 'Loud by more than 3 LU from the first scene on. Bring the whole mix down; the peaks are fine.',
+    },
+  }),
+  gales('2.12', {
     fileName: 'small_gales_212_st_v2.wav',
-    programme: 'Small Gales',
-    episode: '2.12',
     version: 'Full mix stereo, v2',
-    kind: 'long_form',
-    channels: ['harrow-kids'],
-    character: 'children',
-    layout: 'stereo',
-    seconds: 30,
     targetLufs: -20.1,
-    then: 'submit',
-    airsInHours: 40,
     replaces: 'small_gales_212_st_v1.wav',
-  },
-  ...(
-    [
-      ['Salt & Signal', '11', 'salt-and-signal', fennel, { targetLufs: -18.2, then: 'approve' }],
-      ['Salt & Signal', '12', 'salt-and-signal', fennel, { layout: 'mono', targetLufs: -18 }],
-      ['Third Lantern', '4', 'third-lantern', rooks, { targetLufs: -17.6 }],
-      ['Third Lantern', '5', 'third-lantern', rooks, { targetLufs: -18, truncateShare: 0.25 }],
-    ] as [string, string, string, string, Partial<DemoDeliverable>][]
-  ).map(([programme, episode, channel, by, rest]): DemoDeliverable => ({
-    by,
-    fileName: `${channel.replaceAll('-', '_')}_ep${episode.padStart(2, '0')}.wav`,
-    programme,
-    episode,
-    version: 'Master',
-    kind: 'podcast_episode',
-    channels: [channel],
-    character: 'talk',
-    layout: 'stereo',
-    seconds: 40,
-    targetLufs: -18,
-    sampleRateHz: 44100,
-    then: 'submit',
-    ...rest,
-  })),
+  }),
+  podcast('salt-and-signal', '11', { targetLufs: -18.2, then: 'approve' }),
+  podcast('salt-and-signal', '12', { layout: 'mono' }),
+  podcast('third-lantern', '4', { targetLufs: -17.6 }),
+  podcast('third-lantern', '5', { truncateShare: 0.25 }),
   spot(1, kettle, { then: 'approve' }),
   spot(2, kettle, {}),
   spot(3, kettle, { loudPassageDb: 9 }),
@@ -176,61 +173,20 @@ export const deliverables: DemoDeliverable[] = [
   spot(10, fennel, { targetLufs: -23.1 }),
   spot(11, fennel, { targetLufs: -23 }),
   spot(12, fennel, { targetLufs: -23.3, then: 'keep' }),
-  ...(
-    [
-      ['2.13', 'line-up-tone', { seconds: 32 }],
-      ['2.14', 'drop-outs', { then: 'submit' }],
-      ['2.15', 'long-silence', {}],
-      ['2.16', 'dual-mono', {}],
-      ['2.17', 'out-of-phase', { then: 'submit' }],
-      ['2.18', 'unused-bits', {}],
-      ['2.19', 'declares-wrong', { targetLufs: -21.6 }],
-    ] as [string, DemoFault, Partial<DemoDeliverable>][]
-  ).map(([episode, fault, rest]): DemoDeliverable => ({
-    by: rooks,
-    fileName: `small_gales_${episode.replace('.', '')}_st_v1.wav`,
-    programme: 'Small Gales',
-    episode,
-    version: 'Full mix stereo',
-    kind: 'long_form',
-    channels: ['harrow-kids'],
-    character: 'children',
-    layout: 'stereo',
-    seconds: 20,
-    targetLufs: -23,
-    then: 'keep',
-    fault,
-    ...rest,
-  })),
-  ...(
-    [
-      ['13', 'clipped', { targetLufs: -12 }],
-      ['14', 'dc-offset', {}],
-      ['15', 'silent-right', {}],
-      ['16', 'band-limited', {}],
-    ] as [string, DemoFault, Partial<DemoDeliverable>][]
-  ).map(([episode, fault, rest]): DemoDeliverable => ({
-    by: fennel,
-    fileName: `salt_and_signal_ep${episode}.wav`,
-    programme: 'Salt & Signal',
-    episode,
-    version: 'Master',
-    kind: 'podcast_episode',
-    channels: ['salt-and-signal'],
-    character: 'talk',
-    layout: 'stereo',
-    seconds: 20,
-    targetLufs: -18,
-    sampleRateHz: 44100,
-    then: 'keep',
-    fault,
-    ...rest,
-  })),
+  gales('2.13', { ...faulty('line-up-tone'), seconds: 32 }),
+  gales('2.14', { ...faulty('drop-outs'), then: 'submit' }),
+  gales('2.15', faulty('long-silence')),
+  gales('2.16', faulty('dual-mono')),
+  gales('2.17', { ...faulty('out-of-phase'), then: 'submit' }),
+  gales('2.18', faulty('unused-bits')),
+  gales('2.19', { ...faulty('declares-wrong'), targetLufs: -21.6 }),
+  podcast('salt-and-signal', '13', { ...faulty('clipped'), targetLufs: -12 }),
+  podcast('salt-and-signal', '14', faulty('dc-offset')),
+  podcast('salt-and-signal', '15', faulty('silent-right')),
+  podcast('salt-and-signal', '16', faulty('band-limited')),
   tallow(4, '5.1', {
     fileName: 'tallow_104_mix51_v2.wav',
     version: 'Full mix 5.1, v2',
-    fault: 'lfe-swapped',
-    seconds: 20,
-    then: 'keep',
+    ...faulty('lfe-swapped'),
   }),
 ];
