@@ -247,7 +247,7 @@ export class Meter {
     return [
       {
         code: 'not-a-number',
-        message: `${wildCount} ${wildCount === 1 ? 'sample is' : 'samples are'} not a number or infinite; measured as silence.`,
+        message: `${wildCount} ${wildCount === 1 ? 'sample is' : 'samples are'} not a number, infinite or beyond any level; measured as silence.`,
         atSeconds: wildFirst / this.#options.sampleRateHz,
       },
     ];

@@ -1,6 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import wavefile from 'wavefile';
 import { openNative } from '../../src/engine/containers/open.ts';
+import { integrityCodes, type Finding } from '../../src/engine/figures.ts';
 import { measure } from '../../src/engine/measure.ts';
 import { UnreadableError, type ByteSource } from '../../src/engine/source.ts';
 
@@ -8,11 +9,14 @@ const sourceOf = (bytes: Uint8Array): ByteSource => ({
   size: bytes.length,
   read: (offset, length) => Promise.resolve(bytes.subarray(offset, offset + length)),
 });
+/** What is found in the tone itself is not meant here. */
+const ofTheFile = (findings: Finding[]) =>
+  findings.filter(({ code }) => (integrityCodes as readonly string[]).includes(code));
 async function measured(bytes: Uint8Array) {
   const native = await openNative(sourceOf(bytes));
   if (!native) throw new Error('Not read natively');
-  const [whole] = await measure(native);
-  return whole;
+  const [{ measurement }] = await measure(native);
+  return { measurement: { ...measurement, findings: ofTheFile(measurement.findings) } };
 }
 const codes = async (bytes: Uint8Array) =>
   (await measured(bytes)).measurement.findings.map((finding) => finding.code);
@@ -216,7 +220,7 @@ describe('headers that lie', () => {
         if (!native) continue;
         const [{ measurement }] = await measure(native);
         // Every seed's header promises a second and an eighth at most is there: whatever was changed, something must be told.
-        expect(measurement.findings.length, `mutation ${i}`).toBeGreaterThan(0);
+        expect(ofTheFile(measurement.findings).length, `mutation ${i}`).toBeGreaterThan(0);
       } catch (error) {
         if (!(error instanceof UnreadableError)) throw error;
         expect(error.message).toMatch(/\.$/);

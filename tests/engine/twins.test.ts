@@ -87,5 +87,5 @@ describe.each(Object.keys(programmes))('the kernel and its scalar twin on %s', (
   });
 });
 
-/** A float's own troubles, by rate: one sample that is not a number, infinite, or beyond full scale. */
-const c = (rate: number) => ({ 8000: NaN, 22_050: -Infinity, 44_100: 1.5 })[rate] ?? 0.25;
+/** A float's own troubles, by rate: one sample that is not a number, infinite, beyond full scale, or beyond any level. */
+const c = (rate: number) => ({ 8000: NaN, 22_050: -Infinity, 44_100: 1.5, 96_000: -1e30 })[rate] ?? 0.25;

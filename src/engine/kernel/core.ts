@@ -46,7 +46,7 @@ export interface LaneTotals {
 export interface CoreTotals {
   samples: number;
   lanes: LaneTotals[];
-  /** Samples that were not finite and counted as silence; place of the first. */
+  /** Samples that were not finite, or beyond any level, and counted as silence; place of the first. */
   wildCount: number;
   wildFirst: number;
   /** All integer samples or-ed, left-justified in 32 bits: its lowest set bit tells the depth in use. 0 for float. */
@@ -61,6 +61,9 @@ export interface Core {
   /** Ends the programme. */
   finish(): CoreTotals;
 }
+
+/** +180 dBFS: a float beyond it is no sound, and counts as silence with those that are not numbers; no sum of the rest overflows. */
+export const loudestSample = 1e9;
 
 /** -12 dBTP: up to it the series holds sample peaks, since no limit of the trade lies there. */
 export const seriesFloor = Math.fround(10 ** (-12 / 20));

@@ -5,6 +5,7 @@ import {
   fullScaleOf,
   fullScaleRun,
   isWide,
+  loudestSample,
   seriesFloor,
   stepBoundary,
   zeroRunSeconds,
@@ -119,7 +120,8 @@ export class ScalarCore implements Core {
   #sample(view: DataView, offset: number): number {
     const { kind, bytes } = this.#options.encoding;
     const x = this.#read(view, offset);
-    if (!Number.isFinite(x)) {
+    // Written so that NaN is refused too.
+    if (!(Math.abs(x) <= loudestSample)) {
       if (this.#wildCount++ === 0) this.#wildFirst = this.#samples;
       return 0;
     }

@@ -11,6 +11,9 @@ import {
   wideRow,
 } from './rows';
 
+/** As in core.ts. */
+const loudestSample: f64 = 1e9;
+
 export const integers: i32 = 0;
 export const floats: i32 = 1;
 export const doubles: i32 = 2;
@@ -161,11 +164,11 @@ function noteBits(bits: v128): void {
 function convertFloats(lane: i32, from: usize, frames: i32): void {
   const stride = <usize>frameBytes;
   const shape = pattern;
-  const infinity = f32x4.splat(f32.MAX_VALUE);
+  const loudest = f32x4.splat(<f32>loudestSample);
   const start = row(lane) + <usize>(filled * 4);
   for (let done = 0; done < frames; done += 4) {
     let v = i8x16.swizzle(gather(from, stride), shape);
-    const tame = f32x4.le(f32x4.abs(v), infinity);
+    const tame = f32x4.le(f32x4.abs(v), loudest);
     if (!i32x4.all_true(tame)) {
       for (let k = 0; k < 4; k++) {
         const word = load<u32>(markWild(tame) + <usize>(k * 4));
@@ -181,12 +184,12 @@ function convertFloats(lane: i32, from: usize, frames: i32): void {
 function convertDoubles(lane: i32, from: usize, frames: i32): void {
   const stride = <usize>frameBytes;
   const shape = pattern;
-  const infinity = f64x2.splat(f64.MAX_VALUE);
+  const loudest = f64x2.splat(loudestSample);
   const start = row(lane) + <usize>(filled * 4);
   const wideStart = wideRow(lane) + <usize>(filled * 8);
   for (let done = 0; done < frames; done += 2) {
     let v = i8x16.swizzle(v128.load64_lane(from + stride, v128.load64_zero(from), 1), shape);
-    const tame = f64x2.le(f64x2.abs(v), infinity);
+    const tame = f64x2.le(f64x2.abs(v), loudest);
     if (!i64x2.all_true(tame)) {
       for (let k = 0; k < 2; k++) if (load<u64>(markWild(tame) + <usize>(k * 8)) == 0) noteWild(done + k);
       v = v128.and(v, tame);
