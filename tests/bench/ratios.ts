@@ -26,6 +26,8 @@ export interface RatioResult extends Level {
   ffmpegSeconds: number;
   /** Of reading and converting alone; `null` where a decoder stands before it. */
   convertSeconds: number | null;
+  oursCpuSeconds: number | null;
+  ffmpegCpuSeconds: number | null;
   oursMegabytes: number | null;
   ffmpegMegabytes: number | null;
   /** ffmpeg's time by ours; of an MP3 ours by ffmpeg's. */
@@ -92,6 +94,8 @@ export async function measureRow(
       oursSeconds: ours.seconds,
       ffmpegSeconds: theirs.seconds,
       convertSeconds: alone?.seconds ?? null,
+      oursCpuSeconds: ours.cpuSeconds,
+      ffmpegCpuSeconds: theirs.cpuSeconds,
       oursMegabytes: ours.peakMegabytes,
       ffmpegMegabytes: theirs.peakMegabytes,
       ratio: row.isMp3 ? ours.seconds / theirs.seconds : theirs.seconds / ours.seconds,

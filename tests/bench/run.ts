@@ -96,7 +96,7 @@ try {
   const foot = [
     `${machine.cpu}, ${machine.cores} cores, load ${machine.loadAtStart.toFixed(1)} at the start, ${machine.loadAtEnd.toFixed(1)} at the end; Node ${machine.node}; ${machine.ffmpeg.split(' Copyright')[0]}.`,
     `Best of ${rounds}, ours and ffmpeg in turn, start-up included. ffmpeg measures by ebur128=peak=true, quietly; of an MP3 it decodes only (-f null).`,
-    `MB: peak resident memory, looked up every 5 ms, an MP3’s decoder included. Idle is our process with 1 s to measure: ${idle?.toFixed(0) ?? '–'} MB.`,
+    `MB: peak resident memory, looked up every 5 ms, an MP3’s decoder included; CPU s: of all cores, to tell a busy machine from a slow program. Idle is our process with 1 s to measure: ${idle?.toFixed(0) ?? '–'} MB.`,
     ...howItIsMade,
   ];
   console.log(`\n${[...tables, foot.join('\n')].join('\n\n')}`);

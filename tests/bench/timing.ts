@@ -1,12 +1,14 @@
 /** Runs a process from its start to its end, with its time and the memory of it and its children. */
 import { spawn, type ChildProcess } from 'node:child_process';
-import { readdirSync, readFileSync } from 'node:fs';
+import { familyOf, usageOf } from './process-facts.ts';
 import type { Command } from './programs.ts';
 
 export interface Timing {
   seconds: number;
   /** Largest sum of the resident peaks (VmHWM) of the process and its children; `null` where there is no /proc. */
   peakMegabytes: number | null;
+  /** Of all cores, children included: what the work costs, however busy the machine. `null` where there is no /proc. */
+  cpuSeconds: number | null;
   stdout: string;
 }
 
@@ -18,43 +20,6 @@ const running = new Set<ChildProcess>();
 /** Ends what runs, for a bench that is broken off. */
 export const stopAll = (): void => running.forEach((child) => child.kill('SIGKILL'));
 
-function peakOf(pid: number): number {
-  try {
-    const kilobytes = /^VmHWM:\s+(\d+)/m.exec(readFileSync(`/proc/${pid}/status`, 'utf8'))?.[1];
-    return Number(kilobytes ?? 0) / 1024;
-  } catch {
-    // It has ended meanwhile, or the system has no /proc.
-    return 0;
-  }
-}
-
-/** The process and all that descend from it, by the parents that /proc tells. */
-function familyOf(pid: number): number[] {
-  const parents = new Map<number, number[]>();
-  try {
-    for (const name of readdirSync('/proc')) {
-      if (!/^\d+$/.test(name)) continue;
-      const parent = parentOf(name);
-      parents.set(parent, [...(parents.get(parent) ?? []), Number(name)]);
-    }
-  } catch {
-    return [pid];
-  }
-  const family = [pid];
-  for (const one of family) family.push(...(parents.get(one) ?? []));
-  return family;
-}
-
-function parentOf(pid: string): number {
-  try {
-    const stat = readFileSync(`/proc/${pid}/stat`, 'utf8');
-    // The name stands in brackets and may hold anything.
-    return Number(stat.slice(stat.lastIndexOf(')') + 2).split(' ')[1]);
-  } catch {
-    return 0;
-  }
-}
-
 /** Rejects with what the process said where it fails. `withChildren`: their memory is counted too. */
 export function time({ program, args }: Command, withChildren = false): Promise<Timing> {
   return new Promise((resolve, reject) => {
@@ -63,14 +28,20 @@ export function time({ program, args }: Command, withChildren = false): Promise<
     running.add(child);
     let seconds = 0;
     let peak = 0;
+    let cpu = 0;
     let looks = 0;
     let family: number[] = [];
     const look = () => {
       if (child.pid === undefined) return;
       if (looks++ % looksPerFamily === 0) family = withChildren ? familyOf(child.pid) : [child.pid];
+      const usages = family.map(usageOf).filter((usage) => usage !== null);
       peak = Math.max(
         peak,
-        family.reduce((sum, pid) => sum + peakOf(pid), 0),
+        usages.reduce((sum, { peakMegabytes }) => sum + peakMegabytes, 0),
+      );
+      cpu = Math.max(
+        cpu,
+        usages.reduce((sum, { cpuSeconds }) => sum + cpuSeconds, 0),
       );
     };
     const looking = setInterval(look, lookEveryMs);
@@ -85,7 +56,8 @@ export function time({ program, args }: Command, withChildren = false): Promise<
     child.once('close', (code, signal) => {
       clearInterval(looking);
       running.delete(child);
-      if (code === 0) return resolve({ seconds, peakMegabytes: peak || null, stdout });
+      if (code === 0)
+        return resolve({ seconds, peakMegabytes: peak || null, cpuSeconds: cpu || null, stdout });
       reject(
         new Error(
           `${program} ${args.join(' ')} ended with ${signal ?? code}: ${(stderr || stdout).slice(-1500)}`,
@@ -95,7 +67,7 @@ export function time({ program, args }: Command, withChildren = false): Promise<
   });
 }
 
-/** Runs the commands in turn, round after round, so that a busy minute of the machine meets all; the best time and largest memory of each. */
+/** Runs the commands in turn, round after round, so that a busy minute of the machine meets all; the best times and largest memory of each. */
 export async function bestOf(rounds: number, commands: Command[], withChildren = false): Promise<Timing[]> {
   const best: Timing[] = [];
   for (let round = 0; round < rounds; round++)
@@ -106,6 +78,7 @@ export async function bestOf(rounds: number, commands: Command[], withChildren =
         seconds: Math.min(before.seconds, now.seconds),
         peakMegabytes:
           now.peakMegabytes === null ? null : Math.max(before.peakMegabytes ?? 0, now.peakMegabytes),
+        cpuSeconds: now.cpuSeconds === null ? null : Math.min(before.cpuSeconds ?? Infinity, now.cpuSeconds),
         stdout: now.stdout,
       };
     }
