@@ -20,9 +20,13 @@ function stretches(parts: readonly Stretch[], rate: number, channels = 2): Plana
     const [start, end] = [Math.round(passed * rate), Math.round((passed + part.seconds) * rate)];
     passed += part.seconds;
     if (part.levelDbfs === null) continue;
-    part.levelDbfs.forEach((level, c) => {
+    const [first, ...others] = part.levelDbfs;
+    for (let n = start; n < end; n++)
+      out[0][n] = amplitude(first) * Math.sin((2 * Math.PI * 1000 * n) / rate);
+    others.forEach((level, i) => {
       for (let n = start; n < end; n++)
-        out[c][n] = amplitude(level) * Math.sin((2 * Math.PI * 1000 * n) / rate);
+        out[i + 1][n] =
+          level === first ? out[0][n] : amplitude(level) * Math.sin((2 * Math.PI * 1000 * n) / rate);
     });
   }
   return out;

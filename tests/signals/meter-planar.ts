@@ -11,8 +11,30 @@ export function interleave(planar: readonly ArrayLike<number>[], encoding: Encod
   const { kind, bytes, littleEndian: le } = encoding;
   const frames = planar[0].length;
   const out = new Uint8Array(frames * planar.length * bytes);
-  const view = new DataView(out.buffer);
+  const words = le && kind !== 'unsigned' ? wordsOf(out.buffer, kind, bytes) : null;
   const full = 2 ** (8 * bytes - 1);
+  if (words) {
+    const [scale, low, high] = kind === 'float' ? [1, -Infinity, Infinity] : [full, -full, full - 1];
+    planar.forEach((samples, c) => {
+      for (let i = 0, o = c; i < frames; i++, o += planar.length) {
+        const x = samples[i] * scale;
+        words[o] = kind === 'float' ? x : Math.max(low, Math.min(high, Math.round(x)));
+      }
+    });
+    return out;
+  }
+  if (kind === 'integer' && bytes === 3 && le) {
+    planar.forEach((samples, c) => {
+      for (let i = 0, o = 3 * c; i < frames; i++, o += 3 * planar.length) {
+        const code = Math.max(-full, Math.min(full - 1, Math.round(samples[i] * full)));
+        out[o] = code;
+        out[o + 1] = code >> 8;
+        out[o + 2] = code >> 16;
+      }
+    });
+    return out;
+  }
+  const view = new DataView(out.buffer);
   for (let i = 0, o = 0; i < frames; i++)
     for (let c = 0; c < planar.length; c++, o += bytes) {
       const x = planar[c][i];
@@ -27,6 +49,13 @@ export function interleave(planar: readonly ArrayLike<number>[], encoding: Encod
         out[o + (le ? b : bytes - 1 - b)] = Math.floor(code / 2 ** (8 * b)) & 255;
     }
   return out;
+}
+
+/** The same bytes as words of the machine, which are little-endian wherever this runs; there is none of 24 bit. */
+function wordsOf(buffer: ArrayBuffer, kind: Encoding['kind'], bytes: number) {
+  if (kind === 'float') return bytes === 4 ? new Float32Array(buffer) : new Float64Array(buffer);
+  if (bytes === 2) return new Int16Array(buffer);
+  return bytes === 4 ? new Int32Array(buffer) : null;
 }
 
 export interface PlanarOptions {
