@@ -54,7 +54,8 @@ export class Stereo {
     if (ll < silent || rr < silent) return;
     const value = Math.max(-1, Math.min(1, lr / Math.sqrt(ll * rr)));
     this.#windows++;
-    if (value < 0) this.#below++;
+    // As shown, to two decimals: what has nothing to do with each other wavers about 0.
+    if (value <= -0.005) this.#below++;
     if (this.#lowest !== null && value >= this.#lowest) return;
     this.#lowest = value;
     this.#lowestAt = (hop + 1) / 10 - correlation.windowSeconds;
