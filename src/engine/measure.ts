@@ -58,8 +58,10 @@ export async function measure(
     );
     return { presentation, observer, meter };
   });
+  // One presentation may be read straight into its meter's memory; several share what is read.
+  const into = parts.length === 1 ? parts[0].meter.blocks : undefined;
   let done = 0;
-  for await (const { bytes, frames } of source.blocks(signal, window)) {
+  for await (const { bytes, frames } of source.blocks(signal, window, into)) {
     for (const { meter } of parts) meter.process(bytes, frames);
     done += frames;
     onProgress?.(done / rate, secondsTotal);
@@ -94,7 +96,15 @@ export async function measure(
           // Nothing is assumed where the plan says it.
           ...source.findings.filter(({ code }) => !plan.presentations || code !== 'layout-assumed'),
           ...findings,
-          ...signalFindings({ figures, facts, silences, speakers, bitDepth, declaredLoudness }),
+          ...signalFindings({
+            figures,
+            facts,
+            silences,
+            speakers,
+            bitDepth,
+            // What a file declares is of the file: of several presentations it does not say which.
+            declaredLoudness: parts.length === 1 ? declaredLoudness : undefined,
+          }),
         ],
       },
       series,

@@ -125,6 +125,11 @@ export class Meter {
     return this.#samples;
   }
 
+  /** Memory that a source may read into: what lies there is measured without copying. */
+  get blocks(): readonly Uint8Array[] | undefined {
+    return this.#core.blocks;
+  }
+
   /** Takes whole interleaved frames. */
   process(bytes: Uint8Array, frames: number): void {
     this.#core.process(bytes, frames);

@@ -25,8 +25,15 @@ export interface SampleSource {
   readonly secondsTotal: number | null;
   /** Of the frames: all audio channels of the format, interleaved. */
   readonly encoding: Encoding;
-  /** Whole frames in order, those of the window only; the bytes are reused, so take what you need before asking for more. */
-  blocks(signal: AbortSignal, window?: FrameWindow): AsyncIterable<{ bytes: Uint8Array; frames: number }>;
+  /**
+   * Whole frames in order, those of the window only; the bytes are reused, so take what you need before asking for more.
+   * `into`: two pieces of memory that it may use in turn.
+   */
+  blocks(
+    signal: AbortSignal,
+    window?: FrameWindow,
+    into?: readonly Uint8Array[],
+  ): AsyncIterable<{ bytes: Uint8Array; frames: number }>;
 }
 
 /** The file cannot be measured: a stable code, and a sentence that says what was found. */

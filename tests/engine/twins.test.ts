@@ -1,8 +1,11 @@
 import { describe, expect, it } from 'vitest';
 import type { Encoding } from '../../src/engine/containers/samples.ts';
-import type { Speaker } from '../../src/engine/layouts.ts';
+import { openNative } from '../../src/engine/containers/open.ts';
+import { layoutOfCount, type Speaker } from '../../src/engine/layouts.ts';
+import { measure } from '../../src/engine/measure.ts';
 import type { Planar, Run, Step, StepObserver } from '../../src/engine/steps.ts';
 import { measurePlanar } from '../signals/meter-planar.ts';
+import { wavOf } from '../signals/wav.ts';
 
 /** Everything that an observer sees, copied; runs sorted, since the twins may tell those of one step in another order. */
 class Witness implements StepObserver {
@@ -89,3 +92,33 @@ describe.each(Object.keys(programmes))('the kernel and its scalar twin on %s', (
 
 /** A float's own troubles, by rate: one sample that is not a number, infinite, beyond full scale, or beyond any level. */
 const c = (rate: number) => ({ 8000: NaN, 22_050: -Infinity, 44_100: 1.5, 96_000: -1e30 })[rate] ?? 0.25;
+
+describe('frames that a source reads straight into the kernel’s memory', () => {
+  it.each([16, 24, 32, 'float'] as const)('measure as those that are copied, in %s', async (bits) => {
+    state = 7;
+    const planar = [0, 1].map(() => Float64Array.from({ length: 300_001 }, () => 0.4 * random()));
+    const bytes = wavOf(planar, 48_000, bits);
+    const open = async () => {
+      const source = await openNative({
+        size: bytes.length,
+        read: (offset, length, into) => {
+          const wanted = bytes.subarray(offset, offset + length);
+          if (!into) return Promise.resolve(wanted);
+          into.set(wanted);
+          return Promise.resolve(into.subarray(0, wanted.length));
+        },
+      });
+      if (!source) throw new Error('Not read natively');
+      return source;
+    };
+    const { speakers } = layoutOfCount(2);
+    const encoding: Encoding =
+      bits === 'float'
+        ? { kind: 'float', bytes: 8, littleEndian: true }
+        : { kind: 'integer', bytes: (bits / 8) as 2 | 3 | 4, littleEndian: true };
+    const copied = measurePlanar(planar, 48_000, { encoding, speakers });
+    const [{ measurement, series }] = await measure(await open());
+    expect(measurement.figures).toMatchObject(copied.figures);
+    expect(series).toEqual(copied.series);
+  });
+});

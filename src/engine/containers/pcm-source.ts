@@ -37,18 +37,22 @@ export class PcmSource implements SampleSource {
     return this.pcm.encoding;
   }
 
-  async *blocks(signal: AbortSignal, window: FrameWindow = { startFrame: 0, endFrame: null }) {
+  async *blocks(
+    signal: AbortSignal,
+    window: FrameWindow = { startFrame: 0, endFrame: null },
+    into: readonly Uint8Array[] = [0, 1].map(() => new Uint8Array(blockBytes)),
+  ) {
     const { encoding, dataOffset, frames, format } = this.pcm;
     const frameBytes = encoding.bytes * format.channels;
-    const blockFrames = Math.max(1, Math.floor(blockBytes / frameBytes));
+    // By fours, as the kernel takes them; the widest frame there is leaves room for many.
+    const blockFrames = Math.floor(into[0].length / frameBytes) & ~3;
     const end = Math.min(frames, window.endFrame ?? frames);
-    const buffers = [0, 1].map(() => new Uint8Array(blockFrames * frameBytes));
     let turn = 0;
     const readFrom = (frame: number) =>
       this.bytes.read(
         dataOffset + frame * frameBytes,
         Math.min(blockFrames, end - frame) * frameBytes,
-        buffers[turn++ % 2],
+        into[turn++ % 2],
       );
     let frame = Math.max(0, window.startFrame);
     let next = frame < end ? readFrom(frame) : null;

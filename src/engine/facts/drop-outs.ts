@@ -26,7 +26,8 @@ export class DropOuts {
   }
 
   step(energy: Float64Array): void {
-    this.#energies.forEach((ring, c) => (ring[this.#steps % remembered] = energy[c]));
+    const place = this.#steps % remembered;
+    for (let c = 0; c < this.#energies.length; c++) this.#energies[c][place] = energy[c];
     this.#steps++;
     if (this.#waiting.length === 0) return;
     const known = (run: Run) => this.#stepOf(run.start + run.length) + aroundSteps < this.#steps;
@@ -50,8 +51,9 @@ export class DropOuts {
   #decide({ audioChannel, start, length }: Run): void {
     const [first, last] = [this.#stepOf(start), this.#stepOf(start + length)];
     const signal = powerOfDb(dropOut.aroundDbfs);
-    if (this.#loudest(audioChannel, first - aroundSteps, first) <= signal) return;
-    if (this.#loudest(audioChannel, last, last + aroundSteps) <= signal) return;
+    // Whole steps beside those of its ends: a step that holds both ends does not tell on which side its signal lies.
+    if (this.#loudest(audioChannel, first - aroundSteps, first - 1) <= signal) return;
+    if (this.#loudest(audioChannel, last + 1, last + aroundSteps) <= signal) return;
     this.#count++;
     if (this.#listed.length < mostListed)
       this.#listed.push({ audioChannel, atSeconds: start / this.#rate, lengthSeconds: length / this.#rate });

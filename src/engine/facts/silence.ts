@@ -52,13 +52,18 @@ class Level {
 
 export class Silence {
   readonly #levels = silenceLevelsDbfs.map((level) => new Level(level));
+  readonly #highest = powerOfDb(Math.max(...silenceLevelsDbfs));
+  #sounded = false;
   #steps = 0;
 
   /** Mean squares of a step by audio channel. */
   step(energy: Float64Array): void {
     let loudest = 0;
-    for (const power of energy) if (power > loudest) loudest = power;
-    for (const level of this.#levels) level.step(this.#steps, loudest);
+    for (let c = 0; c < energy.length; c++) if (energy[c] > loudest) loudest = energy[c];
+    // Signal above every level, as in the step before: nothing begins and nothing ends.
+    const sounds = loudest >= this.#highest;
+    if (!(sounds && this.#sounded)) for (const level of this.#levels) level.step(this.#steps, loudest);
+    this.#sounded = sounds;
     this.#steps++;
   }
 

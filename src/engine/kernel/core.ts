@@ -56,6 +56,8 @@ export interface CoreTotals {
 }
 
 export interface Core {
+  /** Memory that a source may read into: frames that lie there need no copying. */
+  readonly blocks?: readonly Uint8Array[];
   /** Takes whole frames. Any split of a programme gives the same to the last bit. */
   process(bytes: Uint8Array, frames: number): void;
   /** Ends the programme. */

@@ -27,6 +27,8 @@ interface Kernel {
     chunk: number,
   ): void;
   inputPointer(): number;
+  takeInputFrom(at: number): void;
+  allocateBlock(bytes: number): number;
   newestPointer(lane: number, frames: number): number;
   offsetsPointer(): number;
   configureSamples(form: number, bytes: number, littleEndian: boolean, unsigned: boolean): void;
@@ -86,6 +88,7 @@ function instantiate(): Kernel {
 
 const mostChunkFrames = 4096;
 const mostChunkBytes = 1 << 20;
+const blockBytes = 1 << 19;
 const runKinds: readonly Run['kind'][] = ['zeros', 'full-scale', 'flat-top'];
 const eventDoubles = 5;
 
@@ -98,6 +101,8 @@ export class KernelCore implements Core {
   readonly #frameBytes: number;
   /** Views of the kernel's memory, which does not grow once it is configured. */
   readonly #input: Uint8Array;
+  /** What a source may read into: frames that lie there are taken without copying. */
+  readonly blocks: readonly Uint8Array[];
   readonly #doubles: Float64Array;
   readonly #records: number;
   readonly #events: number;
@@ -141,12 +146,14 @@ export class KernelCore implements Core {
     k.configureWeighting(w.p1, w.p2, w.a1, w.a2, w.c1, w.c2, scale, stepSamples, options.pair);
     k.begin(taps);
     const factors = downmix ? k.factorsPointer() : 0;
+    const blocks = [0, 1].map(() => k.allocateBlock(blockBytes));
     const { buffer } = k.memory;
     new Float32Array(buffer, k.weightsPointer(), weights.length).set(weights);
     k.prepareQuarters();
     new Int32Array(buffer, k.offsetsPointer(), measured).set(audioChannels.map((c) => c * encoding.bytes));
     if (downmix) new Float64Array(buffer, factors, 2 * measured).set(downmix.flat());
     this.#input = new Uint8Array(buffer, k.inputPointer(), (chunk + 4) * frameBytes);
+    this.blocks = blocks.map((at) => new Uint8Array(buffer, at, blockBytes));
     this.#doubles = new Float64Array(buffer);
     this.#records = k.recordsPointer() / 8;
     this.#events = k.eventsPointer() / 8;
@@ -161,18 +168,25 @@ export class KernelCore implements Core {
   }
 
   process(bytes: Uint8Array, frames: number): void {
-    const silence = this.#options.encoding.kind === 'unsigned' ? 0x80 : 0;
+    const isHere = bytes.buffer === this.#input.buffer;
     for (let done = 0; done < frames; done += this.#chunkFrames) {
       const count = Math.min(this.#chunkFrames, frames - done);
-      const length = count * this.#frameBytes;
-      this.#input.set(bytes.subarray(done * this.#frameBytes, done * this.#frameBytes + length));
-      // Samples are converted four at a time.
-      this.#input.fill(silence, length, length + 3 * this.#frameBytes);
+      // Samples are converted four at a time: what follows the last ones is taken along where it is whole fours.
+      if (isHere && count % 4 === 0) this.#kernel.takeInputFrom(bytes.byteOffset + done * this.#frameBytes);
+      else this.#copy(bytes, done, count);
       this.#kernel.advance(count);
       this.#drain();
       this.#tellSamples(count);
       this.#samples += count;
     }
+  }
+
+  #copy(bytes: Uint8Array, from: number, count: number): void {
+    const length = count * this.#frameBytes;
+    const silence = this.#options.encoding.kind === 'unsigned' ? 0x80 : 0;
+    this.#input.set(bytes.subarray(from * this.#frameBytes, from * this.#frameBytes + length));
+    this.#input.fill(silence, length, length + 3 * this.#frameBytes);
+    this.#kernel.takeInputFrom(this.#input.byteOffset);
   }
 
   #drain(): void {

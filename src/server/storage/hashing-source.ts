@@ -17,8 +17,8 @@ export class HashingSource implements ByteSource {
     this.size = source.size;
   }
 
-  async read(offset: number, length: number): Promise<Uint8Array> {
-    const bytes = await this.source.read(offset, length);
+  async read(offset: number, length: number, into?: Uint8Array): Promise<Uint8Array> {
+    const bytes = await this.source.read(offset, length, into);
     this.#take(offset, bytes);
     return bytes;
   }

@@ -11,7 +11,7 @@ import { closeRuns, dropEvents, follow, widePeakOf } from './runs';
 import { beginStep, peaksOf, quiet, stepPeakOver, survey } from './true-peak';
 import { weigh } from './weighing';
 
-export { allocate, inputPointer, newestPointer, offsetsPointer } from './rows';
+export { allocate, allocateBlock, inputPointer, newestPointer, offsetsPointer, takeInputFrom } from './rows';
 export { configureSamples, convert, usedBits, wildCount, wildFirst } from './convert';
 export { factorsPointer } from './mix';
 export { configureRecords, recordDoubles, recordsPointer, whole } from './records';

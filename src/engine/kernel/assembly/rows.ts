@@ -55,6 +55,14 @@ export function allocate(
 export function inputPointer(): usize {
   return input;
 }
+/** Takes the next frames from elsewhere in this memory; up to three frames more are read from there. */
+export function takeInputFrom(at: usize): void {
+  input = at;
+}
+/** Room that a source may read into, so that its bytes need no copying. */
+export function allocateBlock(bytes: i32): usize {
+  return heap.alloc(<usize>(bytes + 3 * frameBytes + 16));
+}
 /** Where in a frame each measured lane lies: 32-bit byte offsets. */
 export function offsetsPointer(): usize {
   return offsets;
