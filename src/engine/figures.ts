@@ -144,6 +144,8 @@ export interface Places {
 }
 export interface Clipping extends Places {
   longestSamples: number;
+  /** How many are as long as that, or longer: the runs' lengths, summed from the longest down. */
+  atLeast?: { samples: number; count: number }[];
 }
 
 /** Silence by one level: every audio channel's RMS of 10 ms under it. */

@@ -34,9 +34,9 @@ export function signalFindings(of: Of): Finding[] {
   const channel = (c: number) => (of.speakers[c] === 'unknown' ? `audio channel ${c + 1}` : of.speakers[c]);
   const { stereo } = facts;
   return [
-    ...of.silences.slice(0, mostTold).map((stretch): Finding => ({
+    ...of.silences.slice(0, mostTold).map((stretch, i): Finding => ({
       code: 'silence',
-      message: `Silence of ${stretch.lengthSeconds.toFixed(2)} s: every audio channel is under ${level(defaultSilence.levelDbfs, 0)} dBFS.`,
+      message: `Silence of ${stretch.lengthSeconds.toFixed(2)} s: every audio channel is under ${level(defaultSilence.levelDbfs, 0)} dBFS.${more(of.silences.length, i)}`,
       ...stretch,
     })),
     ...facts.dropOuts.listed.slice(0, mostTold).map((place, i): Finding => ({

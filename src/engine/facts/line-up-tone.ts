@@ -1,9 +1,11 @@
 /**
  * A line-up tone near the head. A pure tone follows x[n+1] + x[n-1] = 2 cos(w) x[n]: the best w of a stretch of samples is
- * a quotient of two sums, and what that leaves over tells how pure the tone is.
+ * a quotient of two sums. What that leaves over tells at little cost that most stretches are no tone; of the others, which may
+ * still be any low and smooth sound, the sine that fits best tells.
  */
 import type { LineUpTone } from '../figures.ts';
 import type { Planar } from '../steps.ts';
+import { fitSine } from './sine-fit.ts';
 import { lineUpTone, powerOfDb } from './thresholds.ts';
 
 /** Stretches that are looked at: a fifth of a tenth of a second each, which costs a fifth. */
@@ -70,11 +72,14 @@ export class ToneFinder {
   /** The tone that the held samples are, if they are one. */
   #look(): Found | null {
     const x = this.#held;
+    // A tone may stand on DC.
+    const mean = x.reduce((sum, value) => sum + value, 0) / x.length;
     let [cross, own, neighbours] = [0, 0, 0];
     for (let n = 1; n < x.length - 1; n++) {
-      const sum = x[n - 1] + x[n + 1];
-      cross += x[n] * sum;
-      own += x[n] * x[n];
+      const value = x[n] - mean;
+      const sum = x[n - 1] + x[n + 1] - 2 * mean;
+      cross += value * sum;
+      own += value * value;
       neighbours += sum * sum;
     }
     const count = x.length - 2;
@@ -84,7 +89,10 @@ export class ToneFinder {
     // Noise of power s would leave (2 + 4 cos^2) s over.
     const left = Math.max(0, neighbours - twiceCos * cross) / (2 + twiceCos * twiceCos);
     if (left > own * powerOfDb(-lineUpTone.purityDb)) return null;
-    return { hz: (Math.acos(twiceCos / 2) * this.#rate) / (2 * Math.PI), power: own / count };
+    const { w, power, rest } = fitSine(x, Math.acos(twiceCos / 2));
+    // Also where the fit is no number.
+    if (!(rest <= power * powerOfDb(-lineUpTone.purityDb))) return null;
+    return { hz: (w * this.#rate) / (2 * Math.PI), power };
   }
 
   #take(found: Found | null): void {
@@ -92,7 +100,7 @@ export class ToneFinder {
     const steady =
       found !== null &&
       open !== null &&
-      Math.abs(10 * Math.log10(found.power / open.first.power)) <= lineUpTone.levelDb * 2 &&
+      Math.abs(10 * Math.log10(found.power / open.first.power)) <= lineUpTone.levelDb &&
       Math.abs(found.hz - open.first.hz) <= steadyHz * open.first.hz;
     if (steady) {
       open.hzSum += found.hz;

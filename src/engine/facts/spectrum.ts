@@ -1,6 +1,7 @@
 /**
  * The long-term mean spectrum, of Hann windows of 1024 samples: ten a second in the first 20 s, one in three seconds from then
- * on, which is enough for a mean and costs next to nothing. Two audio channels share one transform.
+ * on, each weighing the time that it stands for. That is enough for a mean and costs next to nothing. Two audio channels share
+ * one transform.
  */
 import type { Speaker } from '../layouts.ts';
 import type { Planar } from '../steps.ts';
@@ -23,7 +24,8 @@ export class Spectrum {
   readonly #lfeMean = new Float64Array(length / 2);
   #next = 0;
   #filled = 0;
-  #windows = 0;
+  /** Samples that all windows stand for: the weights in the sums. */
+  #weights = 0;
 
   constructor(sampleRateHz: number, speakers: readonly Speaker[]) {
     this.#rate = sampleRateHz;
@@ -45,27 +47,28 @@ export class Spectrum {
       });
       this.#filled += taken;
       if (this.#filled < length) return;
-      this.#take();
+      const asked = this.#next < denseSeconds * this.#rate ? this.#rate / 10 : 3 * this.#rate;
+      const hop = Math.max(length, Math.round(asked));
+      this.#take(hop);
       this.#filled = 0;
-      const hop = this.#next < denseSeconds * this.#rate ? this.#rate / 10 : 3 * this.#rate;
-      this.#next += Math.max(length, Math.round(hop));
+      this.#next += hop;
     }
   }
 
-  #take(): void {
-    this.#windows++;
+  #take(weight: number): void {
+    this.#weights += weight;
     const main = this.#held.filter((_, c) => c !== this.#lfe);
-    for (let c = 0; c < main.length; c += 2) this.#add(this.#mean, main[c], main[c + 1]);
-    if (this.#lfe >= 0) this.#add(this.#lfeMean, this.#held[this.#lfe], undefined);
+    for (let c = 0; c < main.length; c += 2) this.#add(weight, this.#mean, main[c], main[c + 1]);
+    if (this.#lfe >= 0) this.#add(weight, this.#lfeMean, this.#held[this.#lfe], undefined);
   }
 
   /** Adds the power of one or two real signals: |Z(k)|^2 + |Z(-k)|^2 of the one as real and the other as imaginary part. */
-  #add(into: Float64Array, one: Float64Array, other: Float64Array | undefined): void {
+  #add(weight: number, into: Float64Array, one: Float64Array, other: Float64Array | undefined): void {
     const [re, im] = [one, other ?? this.#silence];
     this.#fourier.transform(re, im);
     for (let k = 1; k < length / 2; k++) {
       const mirror = length - k;
-      into[k] += re[k] ** 2 + im[k] ** 2 + re[mirror] ** 2 + im[mirror] ** 2;
+      into[k] += weight * (re[k] ** 2 + im[k] ** 2 + re[mirror] ** 2 + im[mirror] ** 2);
     }
     if (!other) this.#silence.fill(0);
   }
@@ -88,7 +91,7 @@ export class Spectrum {
   /** Highest frequency within 60 dB of the octave about 1 kHz; `null` where that is silent or there was no window. */
   bandwidthHz(): number | null {
     const octave = this.#level(this.#mean, 1000 / Math.SQRT2, 1000 * Math.SQRT2);
-    if (this.#windows === 0 || octave / this.#windows < 1e-14) return null;
+    if (this.#weights === 0 || octave / this.#weights < 1e-14) return null;
     const least = octave * powerOfDb(-bandwidth.dropDb);
     for (let k = length / 2 - 1; k >= smoothed; k--) {
       let sum = 0;
@@ -106,6 +109,6 @@ export class Spectrum {
       if (this.#hz(k) > suspectLfe.aboveHz) high += power;
       else low += power;
     });
-    return low + high < 1e-9 * Math.max(1, this.#windows) ? null : high / (low + high);
+    return low + high < 1e-9 * Math.max(1, this.#weights) ? null : high / (low + high);
   }
 }

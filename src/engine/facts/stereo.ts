@@ -28,11 +28,10 @@ export class Stereo {
   }
 
   step({ weighted, energy, leftRight }: Step): void {
-    const [l, r] = [energy[this.#left], energy[this.#right]];
     this.#weightedLeft += weighted[this.#left];
     this.#weightedRight += weighted[this.#right];
-    this.#hop[0] += l;
-    this.#hop[1] += r;
+    this.#hop[0] += energy[this.#left];
+    this.#hop[1] += energy[this.#right];
     this.#hop[2] += leftRight;
     if (++this.#steps % hopSteps !== 0) return;
     const hop = this.#steps / hopSteps - 1;
@@ -43,7 +42,9 @@ export class Stereo {
   }
 
   #window(hop: number): void {
-    let [ll, rr, lr] = [0, 0, 0];
+    let ll = 0;
+    let rr = 0;
+    let lr = 0;
     for (let i = 0; i < this.#ring.length; i += 3) {
       ll += this.#ring[i];
       rr += this.#ring[i + 1];

@@ -3,6 +3,8 @@
 /** Levels at which silence is looked for, so that a spec may choose one. */
 export const silenceLevelsDbfs = [-40, -50, -60, -70] as const;
 export const defaultSilence = { levelDbfs: -60, seconds: 2 } as const;
+/** Lengths in samples from which clipped runs are counted, so that a spec may choose one; the first is the default. */
+export const clippedLengths = [3, 5, 10, 20, 50] as const;
 export const dropOut = { leastSeconds: 0.002, mostSeconds: 1, aroundSeconds: 0.1, aroundDbfs: -50 } as const;
 export const dcOffsetPercent = 0.5;
 export const balanceLu = 3;

@@ -88,6 +88,36 @@ describe('facts of the signal', () => {
     expect(turnedDown.codes).toContain('flat-top');
   });
 
+  it('counts clipped runs by their length', async () => {
+    const [samples] = clean(3);
+    // Runs of 3, 4, 5, 12 and 60 samples, and two samples that make none.
+    [2, 3, 4, 5, 12, 60].forEach((length, i) => samples.fill(1, (i + 1) * 10_000, (i + 1) * 10_000 + length));
+    const { signal } = await facts([samples], { bits: 'float' });
+    expect(signal.clipping).toMatchObject({
+      count: 5,
+      longestSamples: 60,
+      atLeast: [
+        { samples: 3, count: 5 },
+        { samples: 5, count: 3 },
+        { samples: 10, count: 2 },
+        { samples: 20, count: 1 },
+        { samples: 50, count: 1 },
+      ],
+    });
+  });
+
+  it('takes an end for no drop-out, though digital silence stands for a moment before faint noise', async () => {
+    const [left] = clean(4);
+    // Signal up to 1 ms into a step, zeros for 4 ms of it, then noise at -70 dBFS.
+    const end = 2 * rate + 48;
+    const faint = noise(5, left.length, 0.0003);
+    left.forEach((_, i) => (left[i] = i < end ? left[i] : i < end + 192 ? 0 : faint[i]));
+    expect((await facts([left])).signal.dropOuts.count).toBe(0);
+    const [right] = clean(4);
+    right.fill(0, end, end + 192);
+    expect((await facts([right])).signal.dropOuts.count).toBe(1);
+  });
+
   it('measures DC, balance and correlation', async () => {
     const offset = await facts(clean(4).map((samples) => samples.map((x) => x + 0.01)));
     expect(offset.signal.dcOffsetPercent[0]).toBeCloseTo(1, 1);
@@ -147,6 +177,35 @@ describe('facts of the signal', () => {
       '1000 Hz at −18.0 dBFS (EBU R 68)',
     );
     expect((await facts(clean(6))).signal.lineUpTone).toBeNull();
+  });
+
+  it.each([50, 100, 440, 1000, 15_000])('finds a tone of %i Hz beside DC and noise', async (hz) => {
+    const hiss = noise(4, 4 * rate, 0.0003);
+    const tone = sine(hz, 10 ** (-20 / 20), 4).map((x, i) => x + 0.004 + hiss[i]);
+    const { lineUpTone } = (await facts([tone])).signal;
+    expect(Math.abs((lineUpTone?.hz ?? 0) - hz)).toBeLessThan(0.5);
+    expect(lineUpTone?.levelDbfs).toBeCloseTo(-20, 1);
+  });
+
+  it.each([
+    ['two low tones held together', [50, 120], 1],
+    ['a held note with its harmonics', [80, 160, 240], 1],
+    ['a tone that swells', [1000], 1.06],
+  ])('takes %s for no line-up tone', async (_what, hertz, swell) => {
+    const parts = hertz.map((hz) => sine(hz, 0.1, 4));
+    const held = parts[0].map(
+      (_x, i) => swell ** (Math.floor(i / 24_000) % 2) * parts.reduce((sum, part) => sum + part[i], 0),
+    );
+    expect((await facts([held])).signal.lineUpTone).toBeNull();
+  });
+
+  it('weighs the whole length of a programme in its spectrum', async () => {
+    // Noise of the whole band for 10 s, then a minute without what lies above 5 kHz, 40 dB louder.
+    const full = noise(6, 10 * rate, 0.002);
+    const low = sine(1000, 0.2, 60).map((x, i) => x + 0.2 * Math.sin(i * 0.3) + 0.02 * Math.sin(i * 0.65));
+    const { bandwidthHz } = (await facts([joined(full, low)], { bits: 'float' })).signal;
+    // By ten windows a second of the head alone the noise would stand 60 dB under and less; by time it does not.
+    expect(Math.abs((bandwidthHz ?? 0) - (0.65 * rate) / (2 * Math.PI))).toBeLessThan(300);
   });
 
   it('tells bits that are not in use', async () => {
