@@ -2,7 +2,7 @@
  * The judge: a measurement held against a spec version, rule by rule (MEASUREMENT, Verdicts). Pure and instant, so a new
  * version judges old measurements without measuring again.
  */
-import { defaultSilence } from '../engine/facts/thresholds.ts';
+import { clippedLengths, defaultSilence } from '../engine/facts/thresholds.ts';
 import {
   integrityCodes,
   signalCodes,
@@ -111,7 +111,10 @@ function signalValue(metric: SignalMetric, signal: SignalFacts, rule: Rule): Val
     case 'dropOutCount':
       return { figure: signal.dropOuts.count };
     case 'clippedRunCount':
-      return { figure: signal.clipping.count };
+      return clippedRuns(
+        signal,
+        (rule.kind === 'limits' ? rule.clippedSamples : undefined) ?? clippedLengths[0],
+      );
     case 'dcOffsetPercent':
       return { figure: Math.max(0, ...signal.dcOffsetPercent.map(Math.abs)) };
     case 'balanceLu':
@@ -122,7 +125,15 @@ function signalValue(metric: SignalMetric, signal: SignalFacts, rule: Rule): Val
       return known(signal.stereo?.belowZeroPercent ?? null, pair);
     case 'bandwidthHz':
       return known(signal.bandwidthHz, 'no value: silence about 1 kHz');
+    case 'lineUpToneDbfs':
+      return known(signal.lineUpTone?.levelDbfs ?? null, 'no value: no line-up tone found');
   }
+}
+
+function clippedRuns({ clipping }: SignalFacts, samples: number): Value {
+  if (samples === clippedLengths[0] || clipping.count === 0) return { figure: clipping.count };
+  const rung = clipping.atLeast?.find((one) => one.samples === samples);
+  return known(rung?.count ?? null, 'not known for runs of this length');
 }
 
 const integrityMetric = 'finding';

@@ -114,6 +114,13 @@ const metrics: Record<RangeMetric, MetricWords> = {
     decimals: 1,
   },
   bandwidthHz: { name: 'Bandwidth', short: 'bandwidth', unit: 'Hz', marginUnit: 'Hz', decimals: 0 },
+  lineUpToneDbfs: {
+    name: 'Level of the line-up tone',
+    short: 'line-up tone',
+    unit: 'dBFS',
+    marginUnit: 'dB',
+    decimals: 1,
+  },
   bitRateKbps: { name: 'Bit rate', short: 'bit rate', unit: 'kbit/s', marginUnit: 'kbit/s', decimals: 0 },
 };
 
@@ -212,7 +219,11 @@ export function permittedText(rule: Rule, unit: SpecBody['unit'] = 'LUFS'): stri
             ? formatLevel(value, 0)
             : formatLimit(value);
       const unitOf = rule.metric === 'durationSeconds' || words.unit === '' ? '' : ` ${words.unit}`;
-      const under = rule.silenceLevelDbfs ? `, under ${formatLevel(rule.silenceLevelDbfs, 0)} dBFS` : '';
+      const under = rule.silenceLevelDbfs
+        ? `, under ${formatLevel(rule.silenceLevelDbfs, 0)} dBFS`
+        : rule.clippedSamples
+          ? `, of ${rule.clippedSamples} samples or more`
+          : '';
       if (rule.atLeast === null) return `at most ${number(rule.atMost ?? 0)}${unitOf}${under}`;
       if (rule.atMost === null) return `at least ${number(rule.atLeast)}${unitOf}${under}`;
       return `${number(rule.atLeast)} to ${number(rule.atMost)}${unitOf}${under}`;

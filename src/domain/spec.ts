@@ -1,6 +1,6 @@
 /** The rule model of a spec version: what is permitted of each metric, and what a breach means. */
 import { z } from 'zod';
-import { silenceLevelsDbfs } from '../engine/facts/thresholds.ts';
+import { clippedLengths, silenceLevelsDbfs } from '../engine/facts/thresholds.ts';
 import { findingCodes } from '../engine/figures.ts';
 
 /** What a breach means: the delivery is refused, or the supplier is told. */
@@ -28,6 +28,7 @@ export const signalMetrics = [
   'correlationLowest',
   'outOfPhasePercent',
   'bandwidthHz',
+  'lineUpToneDbfs',
 ] as const;
 export type SignalMetric = (typeof signalMetrics)[number];
 
@@ -68,6 +69,8 @@ export const limitsRuleSchema = z
     judgeShortProgrammes: z.boolean().default(false),
     /** Of the rules on silence: the level under which every audio channel counts as silent; absent: -60 dBFS. */
     silenceLevelDbfs: z.union(silenceLevelsDbfs.map((level) => z.literal(level))).optional(),
+    /** Of the rule on clipped runs: how many samples a run has at the least; absent: 3. */
+    clippedSamples: z.union(clippedLengths.map((samples) => z.literal(samples))).optional(),
   })
   .refine((r) => r.atLeast !== null || r.atMost !== null, {
     message: 'Give a lower limit, an upper limit, or both.',

@@ -16,7 +16,15 @@ const quiet: SignalFacts = {
     longestInsideAtSeconds: 4,
   })),
   dropOuts: { ...places, count: 2 },
-  clipping: { ...places, longestSamples: 0 },
+  clipping: {
+    ...places,
+    count: 9,
+    longestSamples: 12,
+    atLeast: [
+      { samples: 3, count: 9 },
+      { samples: 10, count: 1 },
+    ],
+  },
   flatTops: { ...places, longestSamples: 0 },
   dcOffsetPercent: [0.1, -0.62],
   stereo: {
@@ -53,7 +61,15 @@ describe('rules on facts of the signal', () => {
     [limits('silenceHeadSeconds', null, 2, { silenceLevelDbfs: -40 }), 'fail', '3.00', '1.00 s over'],
     [limits('silenceInsideSeconds', null, 0.75), 'pass', '0.75', 'on the limit'],
     [limits('dropOutCount', null, 0), 'fail', '2', '2 over'],
-    [limits('clippedRunCount', null, 0), 'pass', '0', 'on the limit'],
+    [limits('clippedRunCount', null, 0), 'fail', '9', '9 over'],
+    [limits('clippedRunCount', null, 1, { clippedSamples: 10 }), 'pass', '1', 'on the limit'],
+    [limits('lineUpToneDbfs', -18.5, -17.5), 'not_judged', 'no value', 'no value: no line-up tone found'],
+    [
+      limits('clippedRunCount', null, 0, { clippedSamples: 20 }),
+      'not_judged',
+      'no value',
+      'not known for runs of this length',
+    ],
     [limits('dcOffsetPercent', null, 0.5), 'fail', '0.62', '0.12 % over'],
     [limits('balanceLu', -3, 3), 'fail', '−3.46', '0.46 LU under'],
     [limits('correlationLowest', -0.3, null), 'pass', '−0.30', 'on the limit'],
@@ -101,5 +117,14 @@ describe('rules on facts of the signal', () => {
         }),
       ),
     ).toBe('at most 2.0 s, under −70 dBFS');
+    expect(
+      permittedText(
+        ruleSchema.parse({
+          id: 'it',
+          breach: 'reject',
+          ...limits('clippedRunCount', null, 4, { clippedSamples: 10 }),
+        }),
+      ),
+    ).toBe('at most 4, of 10 samples or more');
   });
 });

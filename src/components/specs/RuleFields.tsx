@@ -4,9 +4,9 @@ import { LoadLineEditor } from '@/components/look/LoadLineEditor.tsx';
 import { formatLimit, roundHalfAway } from '@/domain/figures-text.ts';
 import { factNames, findingNames, metricWords } from '@/domain/rule-words.ts';
 import type { RangeMetric } from '@/domain/spec.ts';
-import { silenceLevelsDbfs } from '@/engine/facts/thresholds.ts';
+import { clippedLengths, silenceLevelsDbfs } from '@/engine/facts/thresholds.ts';
 import type { FindingCode } from '@/engine/figures.ts';
-import { isSilence, numberOf, type DraftForm, type RuleForm } from './draft-form.ts';
+import { isClipping, isSilence, numberOf, type DraftForm, type RuleForm } from './draft-form.ts';
 
 const finite = (text: string): number | null => {
   const value = numberOf(text);
@@ -119,6 +119,19 @@ export function RuleFields({ index, onRemove }: Props) {
                   {silenceLevelsDbfs.map((level) => (
                     <option key={level} value={level}>
                       {formatLimit(level).replace(/\.0$/, '')}
+                    </option>
+                  ))}
+                </select>
+              )}
+            </Field>
+          )}
+          {rule.kind === 'limits' && isClipping(rule.metric) && (
+            <Field label="Runs of at least (samples)" hint="One after another at full scale">
+              {(ids) => (
+                <select className="field" {...ids} {...register(at('clippedSamples'))}>
+                  {clippedLengths.map((samples) => (
+                    <option key={samples} value={samples}>
+                      {samples}
                     </option>
                   ))}
                 </select>

@@ -5,7 +5,7 @@ import type { z } from 'zod';
 import { saveDraftSchema } from '@/domain/api/specs.ts';
 import { formatLimit } from '@/domain/figures-text.ts';
 import { rangeMetrics, type Rule, type SpecBody } from '@/domain/spec.ts';
-import { defaultSilence } from '@/engine/facts/thresholds.ts';
+import { clippedLengths, defaultSilence } from '@/engine/facts/thresholds.ts';
 import { findingCodes } from '@/engine/figures.ts';
 
 export interface RuleForm {
@@ -22,6 +22,8 @@ export interface RuleForm {
   judgeShortProgrammes: boolean;
   /** Of rules on silence; as text, for the list that offers it. */
   silenceLevelDbfs: string;
+  /** Of rules on clipped runs, likewise. */
+  clippedSamples: string;
   fact: string;
   /** Values with commas between. */
   allowed: string;
@@ -85,15 +87,18 @@ const firstAtMost: Record<string, string> = {
   dcOffsetPercent: '0.5',
   balanceLu: '3.0',
   outOfPhasePercent: '5.0',
+  lineUpToneDbfs: '−17.5',
 };
 const firstAtLeast: Record<string, string> = {
   balanceLu: '−3.0',
   correlationLowest: '−0.3',
   bandwidthHz: '17000',
+  lineUpToneDbfs: '−18.5',
   bitRateKbps: '192',
 };
 
 export const isSilence = (metric: string): boolean => metric.startsWith('silence');
+export const isClipping = (metric: string): boolean => metric === 'clippedRunCount';
 export const isFact = (subject: string): subject is keyof typeof facts => subject in facts;
 export const isFinding = (subject: string): boolean => (findingCodes as readonly string[]).includes(subject);
 
@@ -117,6 +122,7 @@ const blank = {
   atMost: '',
   judgeShortProgrammes: false,
   silenceLevelDbfs: String(defaultSilence.levelDbfs),
+  clippedSamples: String(clippedLengths[0]),
   fact: 'sampleRateHz',
   allowed: '',
   code: 'truncated',
@@ -170,6 +176,7 @@ function ruleForm(rule: Rule): RuleForm {
         atMost: written(rule.atMost),
         judgeShortProgrammes: rule.judgeShortProgrammes,
         silenceLevelDbfs: String(rule.silenceLevelDbfs ?? defaultSilence.levelDbfs),
+        clippedSamples: String(rule.clippedSamples ?? clippedLengths[0]),
       };
     case 'oneOf':
       return { ...frame, kind: rule.kind, fact: rule.fact, allowed: rule.allowed.join(', ') };
@@ -217,6 +224,7 @@ function candidateRule(rule: RuleForm): unknown {
         atMost: numberOf(rule.atMost),
         judgeShortProgrammes: rule.judgeShortProgrammes,
         ...(isSilence(rule.metric) && { silenceLevelDbfs: numberOf(rule.silenceLevelDbfs) }),
+        ...(isClipping(rule.metric) && { clippedSamples: numberOf(rule.clippedSamples) }),
       };
     case 'oneOf':
       return {

@@ -9,7 +9,11 @@ const places = {
     z.object({ audioChannel: z.number().int(), atSeconds: z.number(), lengthSeconds: z.number() }),
   ),
 };
-const clippingSchema = z.object({ ...places, longestSamples: z.number().int() });
+const clippingSchema = z.object({
+  ...places,
+  longestSamples: z.number().int(),
+  atLeast: z.array(z.object({ samples: z.number().int(), count: z.number().int() })).optional(),
+});
 
 export const signalFactsSchema: z.ZodType<SignalFacts> = z.object({
   silence: z.array(
