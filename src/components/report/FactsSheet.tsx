@@ -2,6 +2,7 @@ import { Figure } from '@/components/look/Figure.tsx';
 import type { DeliverableReport } from '@/domain/api/deliverables.ts';
 import { formatBytes, formatLevel, formatRate, formatTimecode } from '@/domain/figures-text.ts';
 import { defaultSilence } from '@/engine/facts/thresholds.ts';
+import type { Stretch } from '@/engine/figures.ts';
 
 /** What the sheet reads of a measurement: the bench's has no row. */
 type Measured = Pick<
@@ -15,6 +16,8 @@ interface Props {
   sha256: string | null;
   /** Writes a time of the measured stretch. */
   timeOf?: (seconds: number) => string;
+  /** Address of this page with the passage at that stretch; left out where there is no passage to show. */
+  passageAt?: (stretch: Stretch) => string;
 }
 
 const Row = ({ name, children }: { name: string; children: React.ReactNode }) => (
@@ -31,12 +34,14 @@ function SignalSheet({
   signal,
   downmix,
   at,
+  timeOf,
   list,
 }: {
   signal: NonNullable<Figures['signal']>;
   downmix: Figures['downmix'];
   /** Writes a time of the programme under a figure. */
   at: (seconds: number | null) => React.ReactNode;
+  timeOf: (seconds: number) => string;
   list: string;
 }) {
   const silence = signal.silence.find(({ levelDbfs }) => levelDbfs === defaultSilence.levelDbfs);
@@ -81,6 +86,15 @@ function SignalSheet({
             </Row>
           </>
         )}
+        {signal.lineUpTone && (
+          <Row name="Line-up tone">
+            <Figure value={signal.lineUpTone.levelDbfs} unit="dBFS" />
+            <span className="num block text-[12px] text-muted">
+              {Math.round(signal.lineUpTone.hz)} Hz, {timeOf(signal.lineUpTone.startSeconds)} to{' '}
+              {timeOf(signal.lineUpTone.endSeconds)}
+            </span>
+          </Row>
+        )}
         <Row name="Bandwidth">
           <Figure value={signal.bandwidthHz === null ? null : signal.bandwidthHz / 1000} unit="kHz" />
         </Row>
@@ -99,8 +113,33 @@ function SignalSheet({
   );
 }
 
+function FindingTime({
+  stretch,
+  timeOf,
+  passageAt,
+}: { stretch: Stretch } & Pick<Props, 'passageAt'> & Required<Pick<Props, 'timeOf'>>) {
+  const time = timeOf(stretch.atSeconds);
+  if (!passageAt) return <span className="num text-muted">{time}</span>;
+  return (
+    <a
+      className="num text-teal underline underline-offset-4"
+      href={passageAt(stretch)}
+      aria-label={`Show the passage at ${time}`}
+    >
+      {time}
+    </a>
+  );
+}
+
 /** Every figure and fact that stands, whatever a spec asks. */
-export function FactsSheet({ measurement, fileName, byteSize, sha256, timeOf = formatTimecode }: Props) {
+export function FactsSheet({
+  measurement,
+  fileName,
+  byteSize,
+  sha256,
+  timeOf = formatTimecode,
+  passageAt,
+}: Props) {
   const at = (seconds: number | null) =>
     seconds !== null && <span className="num block text-[12px] text-muted">at {timeOf(seconds)}</span>;
   const { format: f, figures, findings } = measurement;
@@ -160,7 +199,7 @@ export function FactsSheet({ measurement, fileName, byteSize, sha256, timeOf = f
         </dl>
       </section>
       {figures.signal && (
-        <SignalSheet signal={figures.signal} downmix={figures.downmix} at={at} list={list} />
+        <SignalSheet signal={figures.signal} downmix={figures.downmix} at={at} timeOf={timeOf} list={list} />
       )}
       <section className="sheet p-4">
         <h2 className="mb-2 text-[13px] font-semibold">The file</h2>
@@ -225,7 +264,14 @@ export function FactsSheet({ measurement, fileName, byteSize, sha256, timeOf = f
               <li key={i}>
                 {finding.message}
                 {finding.atSeconds !== undefined && (
-                  <span className="num text-muted"> {timeOf(finding.atSeconds)}</span>
+                  <>
+                    {' '}
+                    <FindingTime
+                      stretch={{ atSeconds: finding.atSeconds, lengthSeconds: finding.lengthSeconds ?? 0 }}
+                      timeOf={timeOf}
+                      passageAt={passageAt}
+                    />
+                  </>
                 )}
               </li>
             ))}
