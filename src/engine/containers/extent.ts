@@ -53,11 +53,22 @@ export async function dataExtent(source: ByteSource, p: Told): Promise<{ frames:
       atSeconds: present / p.frameBytes / p.sampleRateHz,
     });
     bytes = present;
-  }
+  } else if (await isUntold(source, p.dataOffset + p.promisedBytes, p.littleEndian))
+    p.findings.push({
+      code: 'size-lies',
+      message: `Behind the ${seconds(p.promisedBytes)} s of audio that the header tells of stand ${present - p.promisedBytes} bytes that are no chunk; they were not measured. If they are audio (${seconds(present - p.promisedBytes)} s), export the file again.`,
+      atSeconds: p.promisedBytes / p.frameBytes / p.sampleRateHz,
+    });
   const frames = Math.floor(bytes / p.frameBytes);
   if (frames === 0)
     throw new UnreadableError('no-samples', 'The file has a header but not one sample of audio.');
   return { frames };
+}
+
+/** Whether something stands behind the audio that is neither a pad byte nor a chunk. */
+async function isUntold(source: ByteSource, end: number, littleEndian: boolean): Promise<boolean> {
+  if (source.size - end < 2) return false;
+  return !(await isChunkAt(source, end, littleEndian)) && !(await isChunkAt(source, end + 1, littleEndian));
 }
 
 async function isChunkAt(source: ByteSource, offset: number, littleEndian: boolean): Promise<boolean> {
