@@ -2,7 +2,8 @@
 import type { Finding } from '../figures.ts';
 import { layoutOfCount } from '../layouts.ts';
 import { UnreadableError, type ByteSource } from '../source.ts';
-import { chunksOf, fourCc, type Chunk } from './chunks.ts';
+import { chanBytes, layoutOfChan } from './aiff-layout.ts';
+import { chunksOf, fourCc, isId, type Chunk } from './chunks.ts';
 import { checkShape, dataExtent, layoutFindings } from './extent.ts';
 import type { PcmLayout } from './pcm-source.ts';
 import type { Encoding } from './samples.ts';
@@ -72,10 +73,14 @@ export async function readAiff(source: ByteSource): Promise<PcmLayout | null> {
   const findings: Finding[] = [];
   let common: Common | null = null;
   let sound: Chunk | null = null;
+  let chan: Uint8Array | null = null;
   for await (const chunk of chunksOf(source, 12, false)) {
+    // Behind the samples stand whole chunks or nothing that matters.
+    if (sound && !isId(chunk.id)) break;
     if (chunk.id === 'COMM') common ??= readCommon(await source.read(chunk.offset, Math.min(chunk.size, 64)));
     else if (chunk.id === 'SSND') sound ??= chunk;
-    if (common && sound) break;
+    else if (chunk.id === 'CHAN') chan ??= await source.read(chunk.offset, Math.min(chunk.size, chanBytes));
+    if (common && sound && chan) break;
   }
   if (!common)
     throw new UnreadableError('header-broken', 'The AIFF header is broken: it has no common chunk.');
@@ -102,7 +107,7 @@ export async function readAiff(source: ByteSource): Promise<PcmLayout | null> {
       code: 'size-lies',
       message: `The header gives the audio ${sound.size - 8 - skip} bytes in one place and ${told} in another; the second was taken.`,
     });
-  const layout = layoutOfCount(audioChannels);
+  const layout = (chan && layoutOfChan(chan, audioChannels)) ?? layoutOfCount(audioChannels);
   return {
     format: {
       container,
