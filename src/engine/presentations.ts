@@ -51,7 +51,10 @@ const orders: readonly { id: string; label: string; speakers: readonly Speaker[]
 
 type Group = readonly [name: string, speakers: readonly Speaker[]];
 
-/** Track allocations of EBU R 123 (2009): audio channels in order, group after group. Pairs of coded sound are left out. */
+/**
+ * Track allocations of EBU R 123 (2009): audio channels in order, group after group. Left out: those with pairs of coded sound, and
+ * 16d and 16e, whose order our source does not give. Of 12a it says 'four more' after the mixes: taken as two pairs.
+ */
 const allocations: readonly { id: string; groups: readonly Group[] }[] = [
   {
     id: '4b',
@@ -174,6 +177,9 @@ const endings: readonly [RegExp, Speaker][] = [
   [/^(r|right|rt)$/i, 'R'],
   [/^(c|centre|center)$/i, 'C'],
   [/^(lfe|sub)$/i, 'LFE'],
+  [/^cs$/i, 'Cs'],
+  [/^lc$/i, 'Lc'],
+  [/^rc$/i, 'Rc'],
   [/^ls$/i, 'Ls'],
   [/^rs$/i, 'Rs'],
   [/^(lss|lsd)$/i, 'Lss'],

@@ -119,6 +119,44 @@ describe('a set of mono files', () => {
     expect(joined.truePeak.perChannelDbtp).toEqual(one.truePeak.perChannelDbtp);
   });
 
+  it('keeps full scale and the bits in use as they are, whatever the encoding', async () => {
+    const clipped = noise(3, rate, 1.5).map((x) => Math.max(-1, Math.min(1 - 2 ** -15, x)));
+    for (const bits of [8, 16, 24, 32] as const) {
+      const sides = [clipped, clipped.toReversed()];
+      const parts = await Promise.all(sides.map((side) => open(wavOf([side], rate, bits))));
+      const joined = await loudness(joinMono(parts, ['L', 'R']));
+      expect(joined, `${bits} bit`).toEqual(await loudness(await open(wavOf(sides, rate, bits))));
+    }
+    const parts = [await open(wavOf([clipped], rate, 16)), await open(wavOf([clipped], rate, 'float'))];
+    const { encoding } = joinMono(parts, ['L', 'R']);
+    expect(encoding).toEqual({ kind: 'float', bytes: 8, littleEndian: true });
+  });
+
+  it('takes a programme’s window of every part, and says nothing for all that one part says of itself', async () => {
+    const all = channels(2, 3);
+    const declared = new Uint8Array(602);
+    new DataView(declared.buffer).setUint16(346, 2, true);
+    new DataView(declared.buffer).setInt16(412, -2300, true);
+    const bext = [{ id: 'bext', body: declared }];
+    const parts = await Promise.all(all.map((samples) => open(wavOf([samples], rate, 24, null, bext))));
+    expect(parts[0].format.declaredLoudness?.integratedLufs).toBe(-23);
+    const plan = { ...wholeFile, window: { startSeconds: 1, endSeconds: 2.5 } };
+    const [{ measurement }] = await measure(joinMono(parts, ['L', 'R']), { plan });
+    const [one] = await measure(await open(wavOf(all, rate, 24)), { plan });
+    expect(measurement.figures).toEqual(one.measurement.figures);
+    expect(measurement.format).not.toHaveProperty('declaredLoudness');
+    expect(measurement.format.startTimeReferenceSamples).toBe(0);
+  });
+
+  it('fills the end of a short part of 8 bit with silence and not with full scale', async () => {
+    const parts = [
+      await open(wavOf([noise(1, 2 * rate, 0.1)], rate, 8)),
+      await open(wavOf([new Float64Array(rate)], rate, 8)),
+    ];
+    const { samplePeak } = await loudness(joinMono(parts, ['L', 'R']));
+    expect(samplePeak.perChannelDbfs[1]).toBeNull();
+  });
+
   it('tells of parts that end early, and refuses rates that differ', async () => {
     const [long, short] = [noise(1, 2 * rate, 0.1), noise(2, rate, 0.1)];
     const uneven = joinMono(
