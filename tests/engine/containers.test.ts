@@ -203,6 +203,48 @@ describe('headers that lie', () => {
     expect(measurement.figures.samplePeak.maxDbfs).toBeCloseTo(-6.02, 1);
   });
 
+  /** A file of 8 GiB, of which only the head is there; it counts what is asked of it. */
+  function vast(head: Uint8Array, filler: (offset: number, length: number) => Uint8Array) {
+    const asked = { bytes: 0 };
+    const source: ByteSource = {
+      size: 8 * 2 ** 30,
+      read(offset, length) {
+        asked.bytes += length;
+        const there = head.subarray(Math.min(offset, head.length), offset + length);
+        return Promise.resolve(join(there, filler(offset + there.length, length - there.length)));
+      },
+    };
+    return { source, asked };
+  }
+  const zeros = (_: number, length: number) => new Uint8Array(length);
+
+  it.each([
+    ['bext', 'RIFF', 'WAVE'],
+    ['iXML', 'RIFF', 'WAVE'],
+    ['fmt ', 'RIFF', 'WAVE'],
+    ['ds64', 'RF64', 'WAVE'],
+    ['COMM', 'FORM', 'AIFF'],
+    ['CHAN', 'FORM', 'AIFF'],
+  ])('reads under 400 KiB of a %s chunk that claims 4 GB', async (id, outer, inner) => {
+    const little = outer !== 'FORM';
+    const claim = number(0xfffffff0, 4, little);
+    const head = join(text(outer), number(0xfffffff0, 4, little), text(inner), text(id), claim);
+    const { source, asked } = vast(head, zeros);
+    // Of nothing but zeros no programme is made: it is refused, or left to the decoder.
+    const ended = await openNative(source).catch((error: unknown) => error);
+    if (ended !== null) expect(ended).toBeInstanceOf(UnreadableError);
+    expect(asked.bytes).toBeLessThan(400 * 1024);
+  });
+
+  it('comes to an end in chunks without end', async () => {
+    const empty = join(text('junk'), number(0, 4, true));
+    const { source, asked } = vast(join(text('RIFF'), number(0, 4, true), text('WAVE')), (offset, length) =>
+      Uint8Array.from({ length }, (_, i) => empty[(offset - 12 + i) % 8]),
+    );
+    await expect(openNative(source)).rejects.toThrow(/no format chunk/);
+    expect(asked.bytes).toBeLessThan(300 * 1024);
+  });
+
   it('neither crashes nor hangs on 600 mutated headers, nor measures less than was promised without a finding', async () => {
     let state = 3342;
     const roll = (below: number) => {

@@ -53,6 +53,27 @@ describe('what a WAVE says of its programme', () => {
     });
   });
 
+  // EBU Tech 3285 v2.0: -99.99 to 99.99, the range not below 0; what lies outside is ignored.
+  it('ignores declared loudness that no file can have', async () => {
+    const format = await formatWith([bext(0, 2, [-10_000, -1, 9999, 10_000, -9999])]);
+    expect(format?.declaredLoudness).toEqual({
+      integratedLufs: null,
+      rangeLu: null,
+      truePeakDbtp: 99.99,
+      momentaryMaxLufs: null,
+      shortTermMaxLufs: -99.99,
+    });
+  });
+
+  it('reads the names of tracks by their place, and leaves out a track that never ends', async () => {
+    const track = (place: number, name: string) =>
+      `<TRACK><INTERLEAVE_INDEX>${place}</INTERLEAVE_INDEX><NAME>${name}</NAME></TRACK>`;
+    const format = await formatWith([
+      ixml(`${track(3, 'C')}${track(1, 'L')}<TRACK><INTERLEAVE_INDEX>2</INTERLEAVE_INDEX><NAME>R</NAME>`),
+    ]);
+    expect(format?.trackNames).toEqual(['L', '', 'C']);
+  });
+
   it('takes nothing from chunks that are short, strange or hostile', async () => {
     const bomb = `<!DOCTYPE x [<!ENTITY a "${'b'.repeat(1000)}">]><BWFXML>${'<TRACK>'.repeat(5000)}&a;`;
     const format = await formatWith([{ id: 'bext', body: new Uint8Array(10) }, ixml(bomb)]);

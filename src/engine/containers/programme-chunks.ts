@@ -10,7 +10,8 @@ export const bextBytes = 602;
 export const ixmlBytes = 256 * 1024;
 const mostTrackNames = 64;
 
-const notSet = 0x7fff;
+/** Hundredths beyond it, such as 0x7FFF for a field that is not set, are to be ignored (EBU Tech 3285 v2.0). */
+const mostHundredths = 9999;
 
 /** Samples since midnight, and the loudness that version 2 declares. */
 export function readBext(bytes: Uint8Array): {
@@ -21,15 +22,15 @@ export function readBext(bytes: Uint8Array): {
   if (bytes.length < 348) return { timeReferenceSamples: null, declaredLoudness: null };
   const timeReferenceSamples = view.getUint32(338, true) + view.getUint32(342, true) * 2 ** 32;
   const version = view.getUint16(346, true);
-  const hundredths = (offset: number) => {
+  const hundredths = (offset: number, least = -mostHundredths) => {
     const value = view.getInt16(offset, true);
-    return value === notSet ? null : value / 100;
+    return value < least || value > mostHundredths ? null : value / 100;
   };
   const declared =
     version >= 2 && bytes.length >= 422
       ? {
           integratedLufs: hundredths(412),
-          rangeLu: hundredths(414),
+          rangeLu: hundredths(414, 0),
           truePeakDbtp: hundredths(416),
           momentaryMaxLufs: hundredths(418),
           shortTermMaxLufs: hundredths(420),
@@ -56,9 +57,14 @@ export function readIxml(bytes: Uint8Array): Pick<AudioFormat, 'frameRate' | 'tr
   const perSecond = Number(top) / Number(bottom);
   const frameRate =
     perSecond > 0 ? frameRateOf(perSecond, inside('TIMECODE_FLAG', xml)?.trim() === 'DF') : null;
-  const tracks = [...xml.matchAll(/<TRACK>([\s\S]{0,4000}?)<\/TRACK>/g)].slice(0, mostTrackNames);
+  // Cut at the tags and not matched across them, so that a hostile text takes no longer than its length.
+  const tracks = xml
+    .split('<TRACK>')
+    .slice(1, 1 + mostTrackNames)
+    .filter((track) => track.includes('</TRACK>'));
   const trackNames: string[] = [];
-  for (const [, track] of tracks) {
+  for (const opened of tracks) {
+    const track = opened.slice(0, opened.indexOf('</TRACK>'));
     const place = Number(inside('INTERLEAVE_INDEX', track) ?? inside('CHANNEL_INDEX', track) ?? NaN);
     const name = plainText(inside('NAME', track) ?? '').slice(0, 80);
     if (Number.isInteger(place) && place >= 1 && place <= mostTrackNames) trackNames[place - 1] = name;
