@@ -5,6 +5,8 @@ import type { MeasuringPlan, Presentation } from '../engine/plan.ts';
 
 const mostPresentations = 16;
 const mostAudioChannels = 24;
+const wholeNumber = 'Audio channels are counted in whole numbers from 0.';
+const whichStream = 'Audio streams are counted in whole numbers from 0 to 63.';
 
 export const presentationSchema: z.ZodType<Presentation> = z
   .object({
@@ -14,12 +16,18 @@ export const presentationSchema: z.ZodType<Presentation> = z
       .min(1, { error: 'Give each presentation a name.' })
       .max(60, { error: 'A name has 60 letters at the most.' }),
     audioChannels: z
-      .array(z.number().int().min(0).max(127))
+      .array(
+        z
+          .number({ error: wholeNumber })
+          .int({ error: wholeNumber })
+          .min(0, { error: wholeNumber })
+          .max(127, { error: 'No file has more than 128 audio channels.' }),
+      )
       .min(1, { error: 'A presentation needs an audio channel at least.' })
       .max(mostAudioChannels, {
         error: `A presentation has ${mostAudioChannels} audio channels at the most.`,
       }),
-    speakers: z.array(z.enum(speakers)),
+    speakers: z.array(z.enum(speakers, { error: `A loudspeaker is one of ${speakers.join(', ')}.` })),
   })
   .refine((p) => p.speakers.length === p.audioChannels.length, {
     error: 'Say for each audio channel of a presentation which loudspeaker it feeds.',
@@ -38,7 +46,11 @@ export const presentationSchema: z.ZodType<Presentation> = z
   );
 
 export const measuringPlanSchema: z.ZodType<MeasuringPlan> = z.object({
-  stream: z.number().int().min(0).max(63),
+  stream: z
+    .number({ error: whichStream })
+    .int({ error: whichStream })
+    .min(0, { error: whichStream })
+    .max(63, { error: whichStream }),
   window: z
     .object({
       startSeconds: z.number().min(0, { error: 'The programme cannot begin before the file.' }),

@@ -54,12 +54,17 @@ export function framesOfDay(name: FrameRateName): number {
   return 24 * 3600 * counted - dropped * (24 * 60 - 24 * 6);
 }
 
-/** Reads 'HH:MM:SS:FF' (before the frames ':', or ';' and '.' for drop-frame) to frames from midnight; a sentence where it is none. */
+/** Reads 'HH:MM:SS:FF' (before the frames ':' or '.'; ';' at drop-frame rates only) to frames from midnight; a sentence where it is none. */
 export function parseTimecode(text: string, name: FrameRateName): { frames: number } | { fault: string } {
-  const match = /^(\d{1,2}):(\d{2}):(\d{2})[:;.](\d{2})$/.exec(text.trim());
+  const match = /^(\d{1,2}):(\d{2}):(\d{2})([:;.])(\d{2})$/.exec(text.trim());
   if (!match) return { fault: 'Write a timecode as hours, minutes, seconds and frames: 10:00:00:00.' };
-  const [hours, minutes, seconds, frames] = match.slice(1).map(Number);
+  const [hours, minutes, seconds, frames] = [1, 2, 3, 5].map((part) => Number(match[part]));
   const { counted, dropped } = frameRates[name];
+  // The same numbers would name another moment, 3.6 s apart after an hour.
+  if (match[4] === ';' && dropped === 0)
+    return {
+      fault: `The ';' in ${text.trim()} says drop-frame timecode, and ${name} drops no numbers. Write ':', or choose a drop-frame rate.`,
+    };
   if (hours > 23 || minutes > 59 || seconds > 59) return { fault: `${text.trim()} is no time of a day.` };
   if (frames >= counted)
     return { fault: `A second has ${counted} frames here, counted from 00 to ${counted - 1}.` };

@@ -43,6 +43,8 @@ describe('timecode', () => {
     ['00:01:00;00', '29.97 DF', /does not exist in drop-frame/],
     ['00:00:00:25', '25', /25 frames here/],
     ['24:00:00:00', '25', /no time of a day/],
+    // Another moment than a reader of ';' means.
+    ['01:00:00;00', '29.97', /drops no numbers/],
     ['10 o’clock', '25', /Write a timecode/],
   ] as const)('refuses %s at %s in a sentence', (text, rate, sentence) => {
     expect(parseTimecode(text, rate)).toEqual({ fault: expect.stringMatching(sentence) as string });
